@@ -1,0 +1,1 @@
+//! Claims, the conditions each rests on, and the standing of each condition.

@@ -1,0 +1,1 @@
+//! Targets given by a density, with data.

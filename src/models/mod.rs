@@ -1,0 +1,3 @@
+//! Model families.
+
+pub mod density;

@@ -1,0 +1,1 @@
+//! The study resolved: no default left unsaid; canonical form and keys.

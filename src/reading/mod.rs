@@ -1,0 +1,1 @@
+//! Spanned sections of TOML, and data files (CSV).

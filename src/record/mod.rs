@@ -1,0 +1,1 @@
+//! Layout of the folder that a run leaves, and identity.

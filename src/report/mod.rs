@@ -1,0 +1,1 @@
+//! Pure functions of plan, summary and grounds: tables.

@@ -1,0 +1,1 @@
+//! The file's top level, the sweep, and resolution into a Plan.
