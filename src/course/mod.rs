@@ -1,5 +1,9 @@
 //! Course, Target, Block, Condition, Standing; how a family declares itself and reads its section.
 
+mod family;
+
+pub use family::{EstimandSpec, Family, Request, StartSpec};
+
 use crate::canon::Json;
 use std::sync::Arc;
 
