@@ -1,6 +1,11 @@
 //! The canonical form: JSON by RFC 8785 with the house rules, and SHA-256 over it.
 
+mod digest;
+mod write;
+
 use std::collections::BTreeMap;
+
+pub use digest::{hex, sha256_hex};
 
 /// A JSON value of the canonical form.
 #[derive(Debug, Clone, PartialEq)]

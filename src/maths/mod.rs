@@ -1,6 +1,41 @@
 //! Elementary and special functions with the same bits on every target, sums of fixed shape, and the
 //! operations that formulas are made of.
+//!
+//! Nothing here calls the platform's mathematics: only `+ - * /`, `sqrt`, comparisons and rounding to whole
+//! numbers, which are exact everywhere, and the pinned `libm` crate, which is written in them.
 
 pub mod operation;
 
+mod apply;
+mod dense;
+mod exponential;
+mod gamma;
+mod hyperbolic;
+mod incomplete_beta;
+mod incomplete_gamma;
+mod logarithm;
+mod logistic;
+mod normal;
+mod power;
+mod rounding;
+mod spread;
+mod sum;
+mod trigonometric;
+
+pub use dense::{
+    cholesky, multiply_lower, multiply_lower_transposed, solve_lower, solve_lower_transposed,
+};
+pub use exponential::{exp, expm1};
+pub use gamma::{digamma, ln_beta, ln_choose, ln_gamma};
+pub use hyperbolic::{cosh, sinh, tanh};
+pub use incomplete_beta::{beta_i, beta_ic, beta_quantile, ln_beta_i, ln_beta_ic};
+pub use incomplete_gamma::{gamma_p, gamma_q, gamma_quantile, ln_gamma_p, ln_gamma_q};
+pub use logarithm::{ln, log1p};
+pub use logistic::{logistic, softplus};
+pub use normal::{erf, erfc, ln_normal_cdf, normal_cdf, normal_quantile};
 pub use operation::{Binary, Ternary, Unary};
+pub use power::power;
+pub use rounding::{absolute, ceil, floor, maximum, minimum, round, sign, sqrt};
+pub use spread::{Spread, mean, variance};
+pub use sum::{CHUNK, PARTIALS, Partials, combine_chunks, combine_partials, sum};
+pub use trigonometric::{acos, asin, atan, cos, sin, tan};
