@@ -1,1 +1,11 @@
 //! The study resolved: no default left unsaid; canonical form and keys.
+
+mod block;
+mod identity;
+mod types;
+
+pub use block::{block_length, reviews};
+pub use types::{
+    Accepted, BurnIn, Combine, Data, Ensemble, Estimand, EstimandGoal, Give, Goal, Keep, NUMERICS,
+    Numerics, Plan, Point, Streams, SweepAxis,
+};
