@@ -1,1 +1,26 @@
-//! Kernels on a Target: random-walk Metropolis, slice, full conditional; adaptation; cycles and mixtures.
+//! Kernels on a Target: Metropolis, slice, full conditional; adaptation; cycles and mixtures.
+//!
+//! [`Sampler`] is the `[sampler]` section resolved; [`Sampler::kernel`] builds the [`Kernel`] that makes
+//! one draw's step for several chains in lockstep, on [`Walkers`].
+
+mod combine;
+mod conditional;
+mod covariance;
+mod gain;
+mod integer_walk;
+mod kernel;
+mod random_walk;
+mod sampler;
+mod saved;
+mod slice;
+mod walkers;
+
+pub use combine::{Cycle, Mixture};
+pub use conditional::Conditional;
+pub use integer_walk::IntegerWalk;
+pub use kernel::Kernel;
+pub use random_walk::{Adapt, RandomWalk};
+pub use sampler::{Move, Sampler, Settings, Step};
+pub use saved::Reader;
+pub use slice::Slice;
+pub use walkers::Walkers;
