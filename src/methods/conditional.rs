@@ -1,11 +1,25 @@
 //! Integer coordinates of finite range, one after the other, each drawn from its full conditional (Geman &
 //! Geman 1984): every value is evaluated, and one is drawn by inversion.
 
+use super::declaration::Method;
 use super::kernel::Kernel;
 use super::saved::Reader;
 use super::walkers::Walkers;
 use crate::course::{Phase, State, Target};
 use crate::maths;
+
+pub const DECLARATION: Method = Method {
+    name: "conditional",
+    about: "Draws integer unknowns one after the other from their law given everything else.",
+    limits: "Needs a finite range of at most 10,000 values; evaluates the density at every one of them.",
+    reference: "Geman & Geman 1984.",
+    real: false,
+    integer: true,
+    options: &[],
+};
+
+/// The longest range that is gone through for one draw.
+pub const LONGEST_RANGE: u64 = 10_000;
 
 /// See the head of this file.
 pub struct Conditional {

@@ -3,13 +3,16 @@
 //! [`Sampler`] is the `[sampler]` section resolved; [`Sampler::kernel`] builds the [`Kernel`] that makes
 //! one draw's step for several chains in lockstep, on [`Walkers`].
 
+mod choose;
 mod combine;
 mod conditional;
 mod covariance;
+mod declaration;
 mod gain;
 mod integer_walk;
 mod kernel;
 mod random_walk;
+mod read;
 mod sampler;
 mod saved;
 mod slice;
@@ -17,9 +20,11 @@ mod walkers;
 
 pub use combine::{Cycle, Mixture};
 pub use conditional::Conditional;
+pub use declaration::{Choice, Method, find, table};
 pub use integer_walk::IntegerWalk;
 pub use kernel::Kernel;
 pub use random_walk::{Adapt, RandomWalk};
+pub use read::read;
 pub use sampler::{Move, Sampler, Settings, Step};
 pub use saved::Reader;
 pub use slice::Slice;

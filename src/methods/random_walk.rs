@@ -5,6 +5,7 @@
 //! Cholesky factor of a running covariance (Haario, Saksman & Tamminen 2001); each chain by its own past.
 
 use super::covariance::RunningCovariance;
+use super::declaration::{Choice, Method};
 use super::gain::AdaptiveScale;
 use super::kernel::Kernel;
 use super::saved::Reader;
@@ -12,6 +13,28 @@ use super::walkers::Walkers;
 use crate::course::{Phase, State, Target};
 use crate::{maths, random};
 use multiversion::multiversion;
+
+pub const DECLARATION: Method = Method {
+    name: "metropolis",
+    about: "A random walk: normal steps of all continuous unknowns together, whole steps of each integer unknown.",
+    limits: "Slow in many dimensions (about three steps a dimension for an independent draw at best) and \
+             where the scale of the target changes from place to place.",
+    reference: "Metropolis et al. 1953; Haario, Saksman & Tamminen 2001; Andrieu & Thoms 2008.",
+    real: true,
+    integer: true,
+    options: &[
+        Choice {
+            name: "scale",
+            meaning: "first size of the steps, on the unconstrained scale",
+            default: "2.38 over the root of the number of continuous coordinates; 1 for integers",
+        },
+        Choice {
+            name: "adapt",
+            meaning: "what burn-in adapts: \"covariance\" (scale and shape), \"scale\" or \"none\"",
+            default: "\"covariance\"",
+        },
+    ],
+};
 
 /// What burn-in may change.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]

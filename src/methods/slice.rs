@@ -5,12 +5,37 @@
 //!
 //! Lanes go through the coordinates each at its own pace; all are evaluated together until the last is done.
 
+use super::declaration::{Choice, Method};
 use super::gain::AdaptiveScale;
 use super::kernel::Kernel;
 use super::saved::Reader;
 use super::walkers::Walkers;
 use crate::course::{Phase, State, Target};
 use crate::random::{self, Stream};
+
+pub const DECLARATION: Method = Method {
+    name: "slice",
+    about: "Draws continuous unknowns one after the other, uniformly from where the density exceeds a random level.",
+    limits: "Slow where unknowns are strongly correlated; takes about six evaluations a coordinate.",
+    reference: "Neal 2003.",
+    real: true,
+    integer: false,
+    options: &[
+        Choice {
+            name: "width",
+            meaning: "first width of the interval, on the unconstrained scale; burn-in adapts it",
+            default: "1",
+        },
+        Choice {
+            name: "limit",
+            meaning: "most widths that an interval may grow to",
+            default: "1000",
+        },
+    ],
+};
+
+pub const DEFAULT_WIDTH: f64 = 1.0;
+pub const DEFAULT_LIMIT: u64 = 1000;
 
 /// See the head of this file.
 pub struct Slice {
