@@ -8,10 +8,11 @@ use super::covariance::RunningCovariance;
 use super::declaration::{Choice, Method};
 use super::gain::AdaptiveScale;
 use super::kernel::Kernel;
+use super::numbers;
 use super::saved::Reader;
 use super::walkers::Walkers;
 use crate::course::{Phase, State, Target};
-use crate::{maths, random};
+use crate::maths;
 use multiversion::multiversion;
 
 pub const DECLARATION: Method = Method {
@@ -110,8 +111,8 @@ impl RandomWalk {
             let normals = self.normals.iter_mut().skip(lane).step_by(lanes);
             if walkers.active[lane] {
                 let scale = self.scales[lane].value();
-                normals.for_each(|z| *z = scale * random::normal(stream));
-                self.patience[lane] = random::exponential(stream);
+                normals.for_each(|z| *z = scale * numbers::normal(stream));
+                self.patience[lane] = numbers::exponential(stream);
             } else {
                 normals.for_each(|z| *z = 0.0);
             }

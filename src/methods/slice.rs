@@ -8,10 +8,10 @@
 use super::declaration::{Choice, Method};
 use super::gain::AdaptiveScale;
 use super::kernel::Kernel;
+use super::numbers;
 use super::saved::Reader;
 use super::walkers::Walkers;
 use crate::course::{Phase, State, Target};
-use crate::random::{self, Stream};
 
 pub const DECLARATION: Method = Method {
     name: "slice",
@@ -115,9 +115,9 @@ impl Slice {
         let width = self.widths[coordinate * walkers.lanes + lane].value();
         let here = walkers.position[self.on[coordinate] * walkers.lanes + lane];
         let stream = &mut walkers.streams[lane];
-        let level = walkers.log_density[lane] - random::exponential(stream);
+        let level = walkers.log_density[lane] - numbers::exponential(stream);
         let left = here - width * stream.unit();
-        let left_steps = random::index(stream, self.limit);
+        let left_steps = numbers::index(stream, self.limit);
         self.lanes[lane] = Lane {
             coordinate,
             stage: Stage::Left,
