@@ -1,1 +1,40 @@
-//! R-hat, effective sizes, batch means, quantiles, tail index, and the summary of a run.
+//! What a run says about its quantities: values, their Monte Carlo errors, and whether the draws can be
+//! believed. One quantity at a time, on plain slices, the same draws giving the same bits everywhere.
+//!
+//! The way through: [`estimate`] on the draws of one quantity; [`settle`] over the estimates of a point
+//! (bounds for rare events need the effective size of the whole run); [`review`] against the goal.
+//!
+//! Choices among published variants:
+//! - normal scores use (rank - 3/8)/(S + 1/4) over all S draws (Blom 1958), ties share their mean rank;
+//! - effective sizes sum the initial positive pairs made monotone, without the extra even-lag term that
+//!   some add after the last pair, and are capped at S log10 S (Vehtari et al. 2021);
+//! - of an odd number of draws the middle one is left out when chains are split;
+//! - quantiles interpolate linearly between order statistics (type 7 of Hyndman & Fan 1996).
+
+mod batch;
+mod condition;
+mod effective;
+mod estimate;
+mod figure;
+mod indicator;
+mod lags;
+mod moments;
+mod note;
+mod quantile;
+mod r_hat;
+mod ranks;
+mod rare;
+mod stray;
+mod summary;
+mod tail;
+mod transform;
+
+pub use batch::{batch_count, pooled_batch_variance};
+pub use effective::{Effective, effective};
+pub use estimate::{Estimate, MINIMUM_DRAWS, QuantileEstimate, estimate};
+pub use figure::figure;
+pub use note::Note;
+pub use r_hat::{RHat, r_hat};
+pub use rare::{exact_limits, settle};
+pub use summary::{Figure, GoalState, Summary};
+pub use tail::{Pareto, fit as fit_tail, tail_size};

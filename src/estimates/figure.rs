@@ -1,0 +1,283 @@
+//! A value with its Monte Carlo error in parentheses: 0.4213(7).
+
+use crate::maths::absolute;
+
+/// `value` with the error in units of its last digits: `0.4213(7)` is 0.4213 with error 0.0007.
+///
+/// The error is rounded up, never down: to one digit, or to two where the first is a 1 or a 2 (rounding
+/// 0.0012 up to 0.002 would overstate it by two thirds). From 10^7 on, below 10^-4, and wherever the
+/// error reaches past the units, a power of ten stands behind: `1.235(8)e5`. A value without an error has
+/// three digits and a question mark, `0.421(?)`; no value is a dash.
+pub fn figure(value: Option<f64>, error: Option<f64>) -> String {
+    let Some(value) = value.filter(|v| !v.is_nan()) else {
+        return "\u{2013}".into();
+    };
+    if value.is_infinite() {
+        return if value > 0.0 {
+            "inf".into()
+        } else {
+            "-inf".into()
+        };
+    }
+    match error.filter(|e| e.is_finite() && *e >= 0.0) {
+        None => format!("{}(?)", three_digits(value)),
+        Some(0.0) => format!("{}(0)", plain(value)),
+        Some(error) => with_error(value, error),
+    }
+}
+
+fn with_error(value: f64, error: f64) -> String {
+    let (digits, place) = rounded_up(error);
+    // The power of ten of the leading digit of the value, once rounded to the place of the error.
+    let leading = leading_power(value, place);
+    if place > 0 || leading.is_some_and(|p| p >= 7) || leading.is_none_or(|p| p < -4) && place < -4
+    {
+        let power = leading.unwrap_or(place + digits.len() as i32 - 1);
+        let power = if power < place {
+            place + digits.len() as i32 - 1
+        } else {
+            power
+        };
+        let decimals = usize::try_from(power - place).unwrap_or(0);
+        let mantissa = shifted(value, power, decimals);
+        format!("{mantissa}({digits})e{power}")
+    } else {
+        let decimals = usize::try_from(-place).unwrap_or(0);
+        format!("{}({digits})", unsigned_zero(format!("{value:.decimals$}")))
+    }
+}
+
+/// The digits of an error, rounded up, and the power of ten of the last of them.
+fn rounded_up(error: f64) -> (String, i32) {
+    let two = ceil_to(error, 2);
+    if two.0 < 30 {
+        return (two.0.to_string(), two.1);
+    }
+    let one = ceil_to(error, 1);
+    (one.0.to_string(), one.1)
+}
+
+/// The smallest number of so many digits that is not below a positive error: digits, power of the last.
+fn ceil_to(error: f64, digits: usize) -> (u64, i32) {
+    let decimals = digits - 1;
+    let text = format!("{error:.decimals$e}");
+    let (mantissa, exponent) = text.split_once('e').unwrap_or(("0", "0"));
+    let mut whole: u64 = mantissa.replace('.', "").parse().unwrap_or(0);
+    let mut power = exponent.parse::<i32>().unwrap_or(0) - decimals as i32;
+    let back: f64 = format!("{whole}e{power}").parse().unwrap_or(f64::INFINITY);
+    if back < error {
+        whole += 1;
+    }
+    if whole == 10u64.pow(digits as u32) {
+        whole /= 10;
+        power += 1;
+    }
+    (whole, power)
+}
+
+/// The power of the leading digit of a value rounded at a place; `None` when it rounds to zero.
+fn leading_power(value: f64, place: i32) -> Option<i32> {
+    let first = exponent(value)?;
+    if first < place {
+        // Half of the place or more rounds up to one digit at it.
+        let half: f64 = format!("5e{}", place - 1).parse().unwrap_or(f64::INFINITY);
+        return (absolute(value) > half).then_some(place);
+    }
+    let digits = usize::try_from(first - place).unwrap_or(0);
+    exponent_of(&format!("{value:.digits$e}"))
+}
+
+fn exponent(value: f64) -> Option<i32> {
+    (value != 0.0)
+        .then(|| exponent_of(&format!("{value:e}")))
+        .flatten()
+}
+
+fn exponent_of(text: &str) -> Option<i32> {
+    text.split_once('e').and_then(|(_, e)| e.parse().ok())
+}
+
+/// The value divided by a power of ten, with so many decimals, from its exact decimal digits.
+fn shifted(value: f64, power: i32, decimals: usize) -> String {
+    let Some(first) = exponent(value) else {
+        return format!("{:.decimals$}", 0.0);
+    };
+    // Digits after the leading one of the value that are kept.
+    let keep = decimals as i32 + first - power;
+    if keep < 0 {
+        let rounds_up = keep == -1 && leading_power(value, power - decimals as i32).is_some();
+        let sign = if value < 0.0 && rounds_up { "-" } else { "" };
+        let unit = if rounds_up { 1 } else { 0 };
+        return if decimals == 0 {
+            format!("{sign}{unit}")
+        } else {
+            format!("{sign}0.{unit:0decimals$}")
+        };
+    }
+    let text = format!("{value:.*e}", keep as usize);
+    let (mantissa, exponent) = text.split_once('e').unwrap_or(("0", "0"));
+    let exponent: i32 = exponent.parse().unwrap_or(0);
+    let negative = mantissa.starts_with('-');
+    let mut digits: String = mantissa.chars().filter(char::is_ascii_digit).collect();
+    // Put the point `power - exponent` places to the left.
+    let left = power - exponent;
+    for _ in 0..left {
+        digits.insert(0, '0');
+    }
+    let point = 1 + usize::try_from(-left).unwrap_or(0);
+    while digits.len() < point + decimals {
+        digits.push('0');
+    }
+    digits.truncate(point + decimals);
+    let (whole, part) = digits.split_at(point);
+    let sign = if negative { "-" } else { "" };
+    if decimals == 0 {
+        format!("{sign}{whole}")
+    } else {
+        format!("{sign}{whole}.{part}")
+    }
+}
+
+fn unsigned_zero(text: String) -> String {
+    if text.starts_with('-') && text.bytes().all(|b| matches!(b, b'-' | b'0' | b'.')) {
+        text[1..].into()
+    } else {
+        text
+    }
+}
+
+/// The shortest digits that give the value back.
+fn plain(value: f64) -> String {
+    let size = absolute(value);
+    if value == 0.0 {
+        "0".into()
+    } else if (1e-4..1e7).contains(&size) {
+        format!("{value}")
+    } else {
+        format!("{value:e}")
+    }
+}
+
+/// Three significant digits.
+pub(crate) fn three_digits(value: f64) -> String {
+    if value == 0.0 {
+        return "0".into();
+    }
+    let text = format!("{value:.2e}");
+    let (mantissa, power) = text.split_once('e').unwrap_or(("0", "0"));
+    let power: i32 = power.parse().unwrap_or(0);
+    if (-4..7).contains(&power) {
+        let decimals = usize::try_from(2 - power).unwrap_or(0);
+        if power <= 2 {
+            return format!("{value:.decimals$}");
+        }
+        let whole: f64 = text.parse().unwrap_or(value);
+        return format!("{whole:.0}");
+    }
+    format!("{mantissa}e{power}")
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn f(value: f64, error: f64) -> String {
+        figure(Some(value), Some(error))
+    }
+
+    #[test]
+    fn ordinary_figures() {
+        assert_eq!(f(0.42134, 0.00068), "0.4213(7)");
+        assert_eq!(f(0.42134, 0.00123), "0.4213(13)");
+        assert_eq!(f(0.42134, 0.00291), "0.421(3)");
+        assert_eq!(f(0.42134, 0.00281), "0.4213(29)");
+        assert_eq!(f(0.42134, 0.0003), "0.4213(3)");
+        assert_eq!(f(-12.345, 0.5), "-12.3(5)");
+        assert_eq!(f(12.345, 3.0), "12(3)");
+        assert_eq!(f(12.345, 12.0), "12(12)");
+        assert_eq!(f(100.0, 1.0), "100.0(10)");
+    }
+
+    #[test]
+    fn the_error_is_never_rounded_down() {
+        assert_eq!(f(1.0, 0.000901), "1.0000(10)");
+        assert_eq!(f(1.0, 0.00031), "1.0000(4)");
+        assert_eq!(f(1.0, 0.0095), "1.000(10)");
+        assert_eq!(f(1.0, 0.0100001), "1.000(11)");
+    }
+
+    #[test]
+    fn large_and_small() {
+        assert_eq!(f(123_456.0, 789.0), "1.235(8)e5");
+        assert_eq!(f(4.2134e-8, 6.8e-11), "4.213(7)e-8");
+        assert_eq!(f(1.5e300, 2.2e297), "1.5000(22)e300");
+        assert_eq!(f(123_456_789.0, 0.5), "1.234567890(5)e8");
+        assert_eq!(f(9.9996e-8, 6e-11), "1.0000(6)e-7");
+        assert_eq!(f(5e-324, 5e-324), "5(5)e-324");
+        assert_eq!(f(f64::MAX, 3e307), "1.8(3)e308");
+    }
+
+    #[test]
+    fn errors_beyond_the_value() {
+        assert_eq!(f(0.01, 3.0), "0(3)");
+        assert_eq!(f(-0.01, 3.0), "0(3)");
+        assert_eq!(f(1.0, 400.0), "0(4)e2");
+        assert_eq!(f(0.0, 0.004), "0.000(4)");
+        assert_eq!(f(1e-9, 3e-7), "0(3)e-7");
+        assert_eq!(f(-90.0, 100.0), "-9(10)e1");
+    }
+
+    #[test]
+    fn what_is_missing_is_seen() {
+        assert_eq!(figure(None, Some(1.0)), "\u{2013}");
+        assert_eq!(figure(Some(f64::NAN), Some(1.0)), "\u{2013}");
+        assert_eq!(figure(Some(0.42134), None), "0.421(?)");
+        assert_eq!(figure(Some(0.42134), Some(f64::NAN)), "0.421(?)");
+        assert_eq!(figure(Some(1.5), Some(0.0)), "1.5(0)");
+        assert_eq!(figure(Some(f64::NEG_INFINITY), None), "-inf");
+        assert_eq!(figure(Some(123_456.0), None), "123000(?)");
+        assert_eq!(figure(Some(1.234e-9), None), "1.23e-9(?)");
+    }
+
+    /// Read back: the printed error is at least the true one and less than 1.5 times it, and the printed value
+    /// within half a unit of its last place.
+    #[test]
+    fn printed_figures_read_back() {
+        let mut word = 88172645463325252u64;
+        let mut unit = || {
+            word ^= word << 13;
+            word ^= word >> 7;
+            word ^= word << 17;
+            (word >> 11) as f64 / 9007199254740992.0
+        };
+        for _ in 0..20_000 {
+            let text_value = format!("{}e{}", unit() * 2.0 - 1.0, (unit() * 60.0) as i32 - 30);
+            let value: f64 = text_value.parse().unwrap_or(1.0);
+            let text_error = format!("{}e{}", unit() + 1e-9, (unit() * 60.0) as i32 - 30);
+            let error: f64 = text_error.parse().unwrap_or(1.0);
+            if absolute(value) > 1e12 * error {
+                continue;
+            }
+            let text = f(value, error);
+            let (mantissa, rest) = text.split_once('(').expect("an error");
+            let (digits, power) = rest.split_once(')').expect("an end");
+            let decimals = mantissa.split_once('.').map_or(0, |(_, d)| d.len()) as i32;
+            let power: i32 = power
+                .strip_prefix('e')
+                .map_or(0, |p| p.parse().expect("a power"));
+            let read: f64 = format!("{mantissa}e{power}").parse().expect("a number");
+            let read_error: f64 = format!("{digits}e{}", power - decimals)
+                .parse()
+                .expect("a number");
+            let unit_of_last: f64 = format!("1e{}", power - decimals).parse().expect("a number");
+            assert!(
+                read_error >= error && read_error < 1.5 * error,
+                "{text}: {value} {error}"
+            );
+            assert!(
+                absolute(read - value) <= 0.5000001 * unit_of_last,
+                "{text}: {value} {error}"
+            );
+        }
+    }
+}
