@@ -42,8 +42,8 @@ pub struct Stood {
 
 /// The journal as the engine sees it. Every failure is words for the reader: what could not be done, and why.
 pub trait Journal {
-    /// The blocks of a chain that stand already, in order from number 1.
-    fn standing(&self, point: usize, chain: usize) -> Vec<Stood>;
+    /// The blocks of a chain that stand already, in order from number 1. Asked once for each chain.
+    fn standing(&mut self, point: usize, chain: usize) -> Vec<Stood>;
     /// Appends a block.
     fn append(&mut self, block: &Finished) -> Result<Mark, String>;
     /// Everything appended is on the disk when this returns.

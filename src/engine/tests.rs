@@ -24,7 +24,7 @@ struct Memory {
 }
 
 impl Journal for Memory {
-    fn standing(&self, point: usize, chain: usize) -> Vec<Stood> {
+    fn standing(&mut self, point: usize, chain: usize) -> Vec<Stood> {
         let shelf = self.shelf.lock().unwrap();
         let flat = self.flat.lock().unwrap();
         let blocks = shelf.get(&(point, chain)).into_iter().flatten();
