@@ -5,6 +5,7 @@ use super::shape::Shape;
 use crate::laws::{Algebra, Bound, Law, Value};
 use crate::maths::{Binary, Unary};
 use crate::place::Place;
+use crate::random::Stream;
 
 /// A law whose parameters are values of a graph.
 #[derive(Clone)]
@@ -232,6 +233,26 @@ impl LawTerm {
     pub fn numbers(&self) -> Vec<Value> {
         let ends = [self.from, self.to].into_iter().flatten();
         self.parameters.iter().copied().chain(ends).collect()
+    }
+
+    /// A draw from the law with these numbers, those of [`LawTerm::numbers`]; `None` for laws without finite
+    /// mass, NaN where the numbers leave no law.
+    pub fn draw(&self, stream: &mut Stream, numbers: &[f64]) -> Option<f64> {
+        const TRIES: usize = 100_000;
+        let (parameters, ends) = numbers.split_at(self.parameters.len());
+        let mut ends = ends.iter().copied();
+        let from = self
+            .from
+            .and_then(|_| ends.next())
+            .unwrap_or(f64::NEG_INFINITY);
+        let to = self.to.and_then(|_| ends.next()).unwrap_or(f64::INFINITY);
+        for _ in 0..TRIES {
+            let x = self.law.draw(stream, parameters)?;
+            if (from <= x && x <= to) || x.is_nan() {
+                return Some(x);
+            }
+        }
+        Some(f64::NAN)
     }
 }
 
