@@ -4,6 +4,8 @@
 //! `#[inline(always)]` too: called inside a function compiled for a wider instruction set they become loops of
 //! that set, with the same bits.
 
+use super::gamma::ln_gamma_positive;
+use super::trigonometric::{cos_moderate, moderate, sin_moderate};
 use super::*;
 
 #[inline(always)]
@@ -11,7 +13,8 @@ fn truth(condition: bool) -> f64 {
     if condition { 1.0 } else { 0.0 }
 }
 
-/// One element after the other, by an expression in the names of the arguments.
+/// One element after the other, by an expression in the names of the arguments. Where a branch-free form
+/// holds for most arguments only, it is taken for all, and the others are done again.
 macro_rules! each {
     (($($arg:ident),+) $out:ident $value:expr) => {
         for i in 0..$out.len() {
@@ -19,12 +22,28 @@ macro_rules! each {
             $out[i] = $value;
         }
     };
+    (($($arg:ident),+) $out:ident $value:expr, $holds:expr => $fast:expr) => {
+        let mut all = true;
+        for i in 0..$out.len() {
+            $(let $arg = $arg[i];)+
+            $out[i] = $fast;
+            all &= $holds;
+        }
+        if !all {
+            for i in 0..$out.len() {
+                $(let $arg = $arg[i];)+
+                if !$holds {
+                    $out[i] = $value;
+                }
+            }
+        }
+    };
 }
 
 /// Writes each operation's definition once and makes `apply` and `slice` of it. The names of the arguments
 /// are said twice: once to declare them, once for the loops.
 macro_rules! operations {
-    ($kind:ident ($($arg:ident),+) $args:tt $($variant:ident => $value:expr;)+) => {
+    ($kind:ident ($($arg:ident),+) $args:tt $($variant:ident => $value:expr $(, $holds:expr => $fast:expr)?;)+) => {
         impl $kind {
             /// The value of the operation.
             #[inline(always)]
@@ -39,7 +58,9 @@ macro_rules! operations {
             pub fn slice(self, $($arg: &[f64],)+ out: &mut [f64]) {
                 $(let $arg = &$arg[..out.len()];)+
                 match self {
-                    $($kind::$variant => each!($args out $value),)+
+                    $($kind::$variant => {
+                        each!($args out $value $(, $holds => $fast)?);
+                    })+
                 }
             }
         }
@@ -56,8 +77,8 @@ operations! { Unary (a) (a)
     Expm1 => expm1(a);
     Ln => ln(a);
     Log1p => log1p(a);
-    Sin => sin(a);
-    Cos => cos(a);
+    Sin => sin(a), moderate(a) => sin_moderate(a);
+    Cos => cos(a), moderate(a) => cos_moderate(a);
     Tan => tan(a);
     Asin => asin(a);
     Acos => acos(a);
@@ -69,7 +90,7 @@ operations! { Unary (a) (a)
     Ceil => ceil(a);
     Round => round(a);
     Not => truth(a == 0.0);
-    LnGamma => ln_gamma(a);
+    LnGamma => ln_gamma(a), a >= 0.0 => ln_gamma_positive(a);
     Digamma => digamma(a);
     Erf => erf(a);
     Erfc => erfc(a);

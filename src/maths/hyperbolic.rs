@@ -1,11 +1,12 @@
 //! tanh, branch-free; sinh and cosh.
 
 use super::exponential::half_expm1;
+use super::pairs::exact_product;
 
 /// The hyperbolic tangent, within 1 ulp.
 ///
 /// -t / (2 + t) with t = e^(-2|x|) - 1 carried in two parts, and the quotient corrected by its exact
-/// remainder (products in two parts: Dekker 1971).
+/// remainder (Dekker 1971).
 #[inline(always)]
 pub fn tanh(x: f64) -> f64 {
     let size = x.abs();
@@ -23,20 +24,6 @@ pub fn tanh(x: f64) -> f64 {
     let y = if size < 1e-9 { size } else { y };
     let y = y.copysign(x);
     if x == x { y } else { x }
-}
-
-/// a b as a sum of two (Dekker 1971, with Veltkamp's splitting).
-#[inline(always)]
-pub(super) fn exact_product(a: f64, b: f64) -> (f64, f64) {
-    let halves = |v: f64| {
-        let t = v * 134217729.0;
-        let high = t - (t - v);
-        (high, v - high)
-    };
-    let p = a * b;
-    let (ah, al) = halves(a);
-    let (bh, bl) = halves(b);
-    (p, ((ah * bh - p) + ah * bl + al * bh) + al * bl)
 }
 
 /// The hyperbolic sine.

@@ -7,7 +7,9 @@
 pub mod operation;
 
 mod apply;
+mod beta;
 mod dense;
+mod error;
 mod exponential;
 mod gamma;
 mod hyperbolic;
@@ -16,23 +18,26 @@ mod incomplete_gamma;
 mod logarithm;
 mod logistic;
 mod normal;
+mod pairs;
 mod power;
 mod rounding;
 mod spread;
 mod sum;
 mod trigonometric;
 
+pub use beta::{ln_beta, ln_choose};
 pub use dense::{
     cholesky, multiply_lower, multiply_lower_transposed, solve_lower, solve_lower_transposed,
 };
+pub use error::{erf, erfc};
 pub use exponential::{exp, expm1};
-pub use gamma::{digamma, ln_beta, ln_choose, ln_gamma};
+pub use gamma::{digamma, ln_gamma};
 pub use hyperbolic::{cosh, sinh, tanh};
 pub use incomplete_beta::{beta_i, beta_ic, beta_quantile, ln_beta_i, ln_beta_ic};
 pub use incomplete_gamma::{gamma_p, gamma_q, gamma_quantile, ln_gamma_p, ln_gamma_q};
 pub use logarithm::{ln, log1p};
 pub use logistic::{logistic, softplus};
-pub use normal::{erf, erfc, ln_normal_cdf, normal_cdf, normal_quantile};
+pub use normal::{ln_normal_cdf, normal_cdf, normal_quantile};
 pub use operation::{Binary, Ternary, Unary};
 pub use power::power;
 pub use rounding::{absolute, ceil, floor, maximum, minimum, round, sign, sqrt};

@@ -5,6 +5,7 @@
 //! (Ng 1993, k_sin.c and k_cos.c) are summed, of which the quadrant chooses one. Beyond, `libm` does it.
 
 use super::exponential::SHIFT;
+use super::pairs::difference;
 
 /// Where the multiple of pi/2 has more than 20 bits and its products are no longer exact.
 const HUGE: f64 = 1e6;
@@ -27,14 +28,6 @@ fn reduce(x: f64) -> (u64, f64, f64) {
     let low = (lost + lost_again) - k * HALF_PI[3];
     let r = third + low;
     (shifted.to_bits(), r, (third - r) + low)
-}
-
-/// a - b and what it lost to rounding (Knuth 1969).
-#[inline(always)]
-fn difference(a: f64, b: f64) -> (f64, f64) {
-    let d = a - b;
-    let back = d - a;
-    (d, (a - (d - back)) - (b + back))
 }
 
 /// sin(r + c) for |r| at most pi/4.
