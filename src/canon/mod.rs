@@ -1,6 +1,7 @@
 //! The canonical form: JSON by RFC 8785 with the house rules, and SHA-256 over it.
 
 mod digest;
+mod read;
 mod write;
 
 use std::collections::BTreeMap;

@@ -1,0 +1,178 @@
+//! Layout of the folder that a run leaves.
+//!
+//! ```text
+//! <into>/<study>/<first 12 of the plan digest>.open/     while it is worked on
+//! <into>/<study>/<first 12 of the plan digest>/          when it is done
+//!   data/study.toml  data/inputs/…                       byte for byte
+//!   data/plan.json  data/summary.json  data/summary.csv  data/summary.txt  data/grounds.json
+//!   circumstances.json                                   one entry a start; outside every digest
+//!   journal                                              the draws
+//!   lock                                                 while it is worked on
+//! ```
+//!
+//! Every file but the journal is written aside, forced to the disk and renamed; the folder itself is renamed
+//! last.
+
+use super::fault::RecordFault;
+use super::journal::JournalFile;
+use super::lock::Lock;
+use crate::canon;
+use crate::engine::trail::Digest;
+use std::fs::{self, File};
+use std::io::{self, Write};
+use std::path::{Path, PathBuf};
+
+/// The place of the results of a plan.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Folder {
+    done: PathBuf,
+    open: PathBuf,
+    plan: Digest,
+}
+
+/// What is found there.
+pub enum Entry {
+    /// Finished before.
+    Done(PathBuf),
+    /// To be worked on, by us alone.
+    Open(Box<Open>),
+}
+
+/// A folder that is being worked on. Its lock goes when it is dropped.
+pub struct Open {
+    folder: Folder,
+    pub journal: JournalFile,
+    _lock: Lock,
+}
+
+impl Folder {
+    /// Under `into`, by the name of the study's file and the digest of the plan.
+    pub fn of(into: &Path, study: &Path, plan: &Digest) -> Folder {
+        let stem = study.file_stem().unwrap_or("study".as_ref());
+        let name = canon::hex(plan)[..12].to_owned();
+        let base = into.join(stem);
+        Folder {
+            open: base.join(format!("{name}.open")),
+            done: base.join(name),
+            plan: *plan,
+        }
+    }
+
+    /// Goes in: finds the results, or takes the lock and opens the journal.
+    pub fn enter(&self) -> Result<Entry, RecordFault> {
+        if self.done.exists() {
+            return Ok(Entry::Done(self.done.clone()));
+        }
+        let disk = |fault| RecordFault::disk("make", &self.open, &fault);
+        let inputs = self.open.join("data/inputs");
+        fs::create_dir_all(&inputs).map_err(disk)?;
+        let lock = Lock::take(&self.open.join("lock"))?;
+        if self.done.exists() {
+            // Another process ended its run between our look and our lock.
+            let _ = fs::remove_dir_all(&self.open);
+            return Ok(Entry::Done(self.done.clone()));
+        }
+        let journal = JournalFile::open(&self.open.join("journal"), &self.plan)?;
+        Ok(Entry::Open(Box::new(Open {
+            folder: self.clone(),
+            journal,
+            _lock: lock,
+        })))
+    }
+}
+
+impl Open {
+    /// Where it is while it is worked on.
+    pub fn path(&self) -> &Path {
+        &self.folder.open
+    }
+
+    /// Writes a file of the folder, named from its top: `data/plan.json`. It is there whole or not at all.
+    pub fn write(&self, name: &str, bytes: &[u8]) -> Result<(), RecordFault> {
+        let path = self.folder.open.join(name);
+        let aside = path.with_added_extension("part");
+        let written = File::create(&aside).and_then(|mut file| {
+            file.write_all(bytes)?;
+            file.sync_all()?;
+            fs::rename(&aside, &path)
+        });
+        written.map_err(|fault| {
+            let _ = fs::remove_file(&aside);
+            RecordFault::disk("write", &path, &fault)
+        })
+    }
+
+    /// Gives the folder its name; nothing in it changes any more.
+    pub fn finish(self) -> Result<PathBuf, RecordFault> {
+        let Folder { open, done, .. } = &self.folder;
+        let renamed = || -> io::Result<()> {
+            for inner in ["data/inputs", "data", ""] {
+                File::open(open.join(inner))?.sync_all()?;
+            }
+            fs::rename(open, done)?;
+            fs::remove_file(done.join("lock"))?;
+            match done.parent() {
+                Some(parent) => File::open(parent)?.sync_all(),
+                None => Ok(()),
+            }
+        };
+        renamed().map_err(|fault| RecordFault::disk("finish", done, &fault))?;
+        Ok(done.clone())
+    }
+}
+
+/// The text of a file of a finished folder.
+pub fn read(folder: &Path, name: &str) -> Result<String, RecordFault> {
+    let path = folder.join(name);
+    fs::read_to_string(&path).map_err(|fault| RecordFault::disk("read", &path, &fault))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn open(folder: &Folder) -> Box<Open> {
+        match folder.enter().unwrap() {
+            Entry::Open(open) => open,
+            Entry::Done(path) => panic!("{} is done", path.display()),
+        }
+    }
+
+    #[test]
+    fn a_folder_appears_under_its_name_when_done() {
+        let into = tempfile::tempdir().unwrap();
+        let folder = Folder::of(into.path(), "some/where/pumps.toml".as_ref(), &[0xab; 32]);
+        let work = open(&folder);
+        assert!(work.path().ends_with("pumps/abababababab.open"));
+        work.write("data/plan.json", b"{}").unwrap();
+        let held = folder.enter().err();
+        assert!(matches!(held, Some(RecordFault::Held { .. })));
+        let done = work.finish().unwrap();
+        assert!(done.ends_with("pumps/abababababab"));
+        assert_eq!(read(&done, "data/plan.json").unwrap(), "{}");
+        let names: Vec<_> = fs::read_dir(&done)
+            .unwrap()
+            .map(|entry| entry.unwrap().file_name())
+            .collect();
+        assert!(!names.contains(&"lock".into()), "{names:?}");
+        assert!(matches!(folder.enter().unwrap(), Entry::Done(path) if path == done));
+        let left: Vec<_> = fs::read_dir(done.parent().unwrap()).unwrap().collect();
+        assert_eq!(left.len(), 1);
+    }
+
+    #[test]
+    fn a_folder_left_open_is_gone_on_with() {
+        let into = tempfile::tempdir().unwrap();
+        let folder = Folder::of(into.path(), "pumps.toml".as_ref(), &[1; 32]);
+        drop(open(&folder));
+        drop(open(&folder));
+        let other = Folder::of(into.path(), "pumps.toml".as_ref(), &[2; 32]);
+        fs::create_dir_all(&other.open).unwrap();
+        fs::copy(folder.open.join("journal"), other.open.join("journal")).unwrap();
+        let fault = other.enter().err();
+        assert!(
+            matches!(fault, Some(RecordFault::Foreign { .. })),
+            "{fault:?}"
+        );
+    }
+}
