@@ -2,6 +2,10 @@
 
 mod fault;
 mod nearest;
+mod show;
+mod source;
 
-pub use fault::{Fault, Faults, Place, Source, Text};
+pub use fault::{Fault, Faults};
 pub use nearest::nearest;
+pub use show::{Look, show};
+pub use source::{Place, Source, Text};
