@@ -202,10 +202,7 @@ impl Section {
             if let Some(near) = nearest(key, known.iter().copied()) {
                 fault = fault.help(format!("did you mean `{near}`?"));
             } else if !known.is_empty() {
-                fault = fault.help(format!(
-                    "keys known here: {}",
-                    listed(&known).replace(" or ", " and ")
-                ));
+                fault = fault.help(format!("keys known here: {}", listed(&known, "and")));
             }
             faults.push(fault);
         }

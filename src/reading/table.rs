@@ -1,6 +1,8 @@
 //! A data file as read: columns of numbers and of labels, with row names, units and matrices of columns.
 
-use crate::place::Place;
+use crate::place::{Faults, Place, Source, Text};
+use crate::reading::csv::Rows;
+use crate::reading::load::{How, load};
 use std::sync::Arc;
 
 /// A data file (`[data.NAME]`).
@@ -10,13 +12,18 @@ pub struct Table {
     pub name: String,
     pub rows: usize,
     pub names: Option<RowNames>,
-    /// In the order of the file. The column of row names is among them, as labels.
+    /// In the order of the file.
     pub columns: Vec<Column>,
     pub matrices: Vec<Matrix>,
     /// Of the bytes of the file, in lower-case hexadecimal.
     pub sha256: String,
+    /// Empty cells found, those of dropped rows included.
+    pub missing: usize,
     /// Rows left out because a cell was empty (`missing = "drop rows"`), numbered as in the file from 1.
     pub dropped: Vec<usize>,
+    pub source: Arc<Source>,
+    /// Where each row begins in the source.
+    pub(super) starts: Vec<usize>,
 }
 
 /// The rows are called by the cells of a column, each of which occurs once.
@@ -32,6 +39,8 @@ pub struct Column {
     pub unit: Option<String>,
     /// Its name in the header of the data file.
     pub place: Place,
+    /// Its position in a row of the file, from 0.
+    pub position: usize,
     pub cells: Cells,
 }
 
@@ -62,17 +71,47 @@ impl Table {
     pub fn column(&self, name: &str) -> Option<&Column> {
         self.columns.iter().find(|column| column.name == name)
     }
+
     pub fn matrix(&self, name: &str) -> Option<&Matrix> {
         self.matrices.iter().find(|matrix| matrix.name == name)
     }
+
     /// Names of the columns of a matrix, in order.
     pub fn matrix_columns(&self, matrix: &Matrix) -> Vec<String> {
         let name = |&at: &usize| self.columns[at].name.clone();
         matrix.columns.iter().map(name).collect()
     }
+
     /// The row called so, from 0.
     pub fn row(&self, name: &str) -> Option<usize> {
         let names = self.names.as_ref()?;
         names.values.iter().position(|value| value == name)
+    }
+
+    /// The cell of a row (from 0) in the data file, for faults found in its value.
+    pub fn cell(&self, row: usize, column: &Column) -> Place {
+        let mut cells = Vec::new();
+        let read = self
+            .starts
+            .get(row)
+            .map(|&start| Rows::starting(&self.source.text, start).next(&mut cells));
+        let span = match (read, cells.get(column.position)) {
+            (Some(Ok(true)), Some(cell)) => cell.span.clone(),
+            _ => return column.place.clone(),
+        };
+        Place {
+            source: self.source.clone(),
+            span,
+        }
+    }
+
+    /// A table from text that stands in no file (tests), without names, units and matrices.
+    pub fn bare(name: &str, text: &str) -> Result<Table, Faults> {
+        let mut faults = Faults::default();
+        let source = Text::bare(text).place.source;
+        match load(name, source, String::new(), &How::default(), &mut faults) {
+            Some(table) if faults.is_empty() => Ok(table),
+            _ => Err(faults),
+        }
     }
 }

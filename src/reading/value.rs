@@ -226,7 +226,7 @@ impl Value {
     /// One of these words.
     pub fn word<'w>(&self, words: &[&'w str], faults: &mut Faults) -> Option<&'w str> {
         let Content::Text(text) = &self.content else {
-            self.refuse(&format!("one of {}", listed(words)), faults);
+            self.refuse(&format!("one of {}", listed(words, "or")), faults);
             return None;
         };
         if let Some(word) = words.iter().find(|word| **word == text.text) {
@@ -237,7 +237,7 @@ impl Value {
             format!("`{}` cannot be `{}`", self.path, text.text),
         )
         .label("not known here");
-        let choice = format!("one of {}", listed(words));
+        let choice = format!("one of {}", listed(words, "or"));
         fault = match nearest(&text.text, words.iter().copied()) {
             Some(near) => fault.help(format!("did you mean `{near}`? It can be {choice}")),
             None => fault.help(format!("it can be {choice}")),
@@ -252,12 +252,20 @@ impl Value {
     }
 }
 
-/// `a`, `b` or `c`.
-pub(crate) fn listed(words: &[&str]) -> String {
-    let quoted: Vec<String> = words.iter().map(|word| format!("`{word}`")).collect();
+/// `a`, `b` or `c`; a long list is cut.
+pub(crate) fn listed(words: &[&str], joined: &str) -> String {
+    const SHOWN: usize = 20;
+    let mut quoted: Vec<String> = words
+        .iter()
+        .take(SHOWN)
+        .map(|word| format!("`{word}`"))
+        .collect();
+    if words.len() > SHOWN {
+        quoted.push(format!("{} more", words.len() - SHOWN));
+    }
     match quoted.split_last() {
         None => String::new(),
         Some((only, [])) => only.clone(),
-        Some((last, rest)) => format!("{} or {last}", rest.join(", ")),
+        Some((last, rest)) => format!("{} {joined} {last}", rest.join(", ")),
     }
 }

@@ -1,0 +1,120 @@
+//! `[data.NAME]`: which file, and how it is to be read.
+
+use crate::place::{Fault, Faults, Text};
+use crate::reading::file::{self, LARGEST_DATA};
+use crate::reading::load::{How, Missing, load};
+use crate::reading::{Section, Table};
+use std::path::Path;
+
+/// Reads a section `[data.NAME]` and the file it names; paths are relative to `folder`.
+pub fn data(name: &str, section: &Section, folder: &Path, faults: &mut Faults) -> Option<Table> {
+    let before = faults.0.len();
+    let path = section
+        .need(
+            "file",
+            "the path of a CSV file, relative to the study",
+            faults,
+        )
+        .and_then(|value| value.text(faults));
+    let pinned = section.text("sha256", faults);
+    let how = how(section, faults);
+    section.finish(faults);
+    if faults.0.len() > before {
+        // Still worth reading for its own faults, unless the file is not known or would be read wrongly.
+        path.as_ref()?;
+    }
+    table(name, &path?, folder, pinned.as_ref(), &how, faults).filter(|_| faults.0.len() == before)
+}
+
+/// Reads a data file by its path; a fault of the file as a whole is shown at the path.
+pub fn table(
+    name: &str,
+    path: &Text,
+    folder: &Path,
+    pinned: Option<&Text>,
+    how: &How,
+    faults: &mut Faults,
+) -> Option<Table> {
+    let at = folder.join(&path.text);
+    let read = match file::read(&at, LARGEST_DATA) {
+        Ok(read) => read,
+        Err(what) => {
+            faults.push(
+                Fault::at(path.place.clone(), what)
+                    .label("this file")
+                    .help("paths are relative to the folder of the study"),
+            );
+            return None;
+        }
+    };
+    if let Some(pinned) = pinned {
+        check(pinned, &read.sha256, &at, faults);
+    }
+    match file::text(read.bytes, &at.display().to_string()) {
+        Ok(source) => load(name, source, read.sha256, how, faults),
+        Err(fault) => {
+            faults.push(fault);
+            None
+        }
+    }
+}
+
+fn check(pinned: &Text, found: &str, at: &Path, faults: &mut Faults) {
+    let wanted = pinned.text.trim().to_ascii_lowercase();
+    if wanted.len() != 64 || !wanted.bytes().all(|b| b.is_ascii_hexdigit()) {
+        faults.push(
+            Fault::at(
+                pinned.place.clone(),
+                "`sha256` must be 64 hexadecimal digits",
+            )
+            .label("not a SHA-256"),
+        );
+    } else if wanted != found {
+        faults.push(
+            Fault::at(
+                pinned.place.clone(),
+                format!(
+                    "{} is not the file that the study was written for",
+                    at.display()
+                ),
+            )
+            .label("the SHA-256 wanted")
+            .help(format!(
+                "its SHA-256 is {found}: put that here only if the change is meant"
+            )),
+        );
+    }
+}
+
+fn how(section: &Section, faults: &mut Faults) -> How {
+    let missing = match section.word("missing", &["fault", "drop rows", "unknown"], faults) {
+        Some("drop rows") => Missing::DropRows,
+        Some("unknown") => Missing::Unknown,
+        _ => Missing::Fault,
+    };
+    let mut units = Vec::new();
+    if let Some(unit) = section.section("unit", faults) {
+        for (column, value) in unit.entries() {
+            units.extend(value.text(faults).map(|text| (column, text)));
+        }
+    }
+    let mut matrices = Vec::new();
+    if let Some(matrix) = section.section("matrix", faults) {
+        for (name, value) in matrix.entries() {
+            let patterns = if value.is_list() {
+                value.texts(faults)
+            } else {
+                value.text(faults).map(|pattern| vec![pattern])
+            };
+            matrices.extend(patterns.map(|patterns| (name, patterns)));
+        }
+    }
+    How {
+        names: section.text("names", faults),
+        columns: section.texts("columns", faults),
+        labels: section.texts("labels", faults).unwrap_or_default(),
+        missing,
+        units,
+        matrices,
+    }
+}
