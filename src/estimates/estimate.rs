@@ -51,6 +51,9 @@ pub struct Estimate {
     pub tail_index: Option<f64>,
     /// 95 % limits of the probability of a rare condition.
     pub limits: Option<(f64, f64)>,
+    /// For a quantity that (hardly) ever took one value: the effective size of the run, once
+    /// [`super::settle`] has found it.
+    pub effective_run: Option<f64>,
     pub notes: Vec<Note>,
 }
 

@@ -54,6 +54,10 @@ fn rounded_up(error: f64) -> (String, i32) {
         return (two.0.to_string(), two.1);
     }
     let one = ceil_to(error, 1);
+    // 0.00095 has become 0.0010: keep both digits.
+    if one.0 == 1 {
+        return ("10".into(), one.1 - 1);
+    }
     (one.0.to_string(), one.1)
 }
 

@@ -72,6 +72,16 @@ pub enum Note {
     },
 }
 
+impl Note {
+    /// Is it about a quantity that always, or nearly always, had one value?
+    pub fn is_seldom(&self) -> bool {
+        matches!(
+            self,
+            Note::Constant { .. } | Note::NearlyConstant { .. } | Note::Rare { .. }
+        )
+    }
+}
+
 /// A count with commas: 12,345.
 pub(super) fn count(n: u64) -> String {
     let digits = n.to_string();

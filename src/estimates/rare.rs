@@ -46,23 +46,23 @@ pub fn settle(estimates: &mut [Estimate]) {
     for e in estimates {
         let total = (e.chains * e.draws) as f64;
         let share = e.value;
-        for note in &mut e.notes {
-            let Note::Rare {
-                effective, limits, ..
-            } = note
-            else {
-                continue;
-            };
-            let size = match (*effective, run) {
+        for note in e.notes.iter_mut().filter(|note| note.is_seldom()) {
+            let size = match (e.effective_bulk, run) {
                 (Some(own), Some(run)) if run > own => Some(own),
                 (own, run) => run.or(own),
             };
             let size = size.map(|s| if s < total { s } else { total });
-            *effective = size;
-            *limits = size
-                .zip(share)
-                .map(|(size, share)| exact_limits(share, size));
-            e.limits = *limits;
+            e.effective_run = size;
+            if let Note::Rare {
+                effective, limits, ..
+            } = note
+            {
+                *effective = size;
+                *limits = size
+                    .zip(share)
+                    .map(|(size, share)| exact_limits(share, size));
+                e.limits = *limits;
+            }
         }
     }
 }

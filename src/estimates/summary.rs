@@ -2,7 +2,7 @@
 
 use super::Estimate;
 use crate::canon::Json;
-use crate::plan::Give;
+use crate::plan::{EstimandGoal, Give};
 
 /// One line of a point's results: a quantity and its estimate.
 #[derive(Debug, Clone, PartialEq)]
@@ -14,6 +14,8 @@ pub struct Figure {
     pub condition: bool,
     /// What the study asks to see of it.
     pub give: Vec<Give>,
+    /// Its own goal, beside that of the run.
+    pub goal: Option<EstimandGoal>,
     pub estimate: Estimate,
 }
 
@@ -52,4 +54,47 @@ pub struct Summary {
     /// One sentence on what limits the goal and what would reach it.
     pub advice: Option<String>,
     pub figures: Vec<Figure>,
+}
+
+/// The quantiles that an estimand's figures need, each once, ascending.
+pub fn levels(give: &[Give]) -> Vec<f64> {
+    let mut levels: Vec<f64> = Vec::new();
+    for wanted in give {
+        match wanted {
+            Give::Value | Give::Uncertainty => {}
+            Give::Quantile(level) => levels.push(tidy(*level)),
+            Give::Interval(part) => levels.extend(ends(*part)),
+        }
+    }
+    levels.sort_by(f64::total_cmp);
+    levels.dedup();
+    levels
+}
+
+/// The levels at the ends of the central interval of a probability: 0.025 and 0.975 of 0.95.
+pub fn ends(part: f64) -> [f64; 2] {
+    [tidy((1.0 - part) / 2.0), tidy((1.0 + part) / 2.0)]
+}
+
+/// The nearest decimal of fifteen places, so that a level computed in binary is the one a reader would write.
+fn tidy(level: f64) -> f64 {
+    format!("{level:.15}").parse().unwrap_or(level)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn levels_are_those_a_reader_would_write() {
+        let give = [
+            Give::Value,
+            Give::Quantile(0.5),
+            Give::Interval(0.95),
+            Give::Interval(0.9),
+            Give::Quantile(0.05),
+        ];
+        assert_eq!(levels(&give), [0.025, 0.05, 0.5, 0.95, 0.975]);
+        assert_eq!(levels(&[Give::Value, Give::Uncertainty]), [0.0; 0]);
+    }
 }
