@@ -55,7 +55,10 @@ pub fn stationary(law: &dyn Law, maker: Maker, steps: usize, chains: usize) -> V
             }
         }
     }
-    counts.iter().map(|counts| chi_square_chance(counts)).collect()
+    counts
+        .iter()
+        .map(|counts| chi_square_chance(counts))
+        .collect()
 }
 
 /// The chance of so uneven counts, or more so, in cells of equal probability.

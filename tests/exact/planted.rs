@@ -127,9 +127,17 @@ fn adaptation_after_burn_in() {
     ];
     for (name, law, maker) in cases {
         let restless = |lanes| -> Box<dyn Kernel> { Box::new(Restless(maker(lanes))) };
-        let (still, _) = both(law, maker);
-        let (chance, rank) = both(law, &restless);
-        println!("{name}: still {still}, restless {chance} {rank}");
+        let chances = |maker| {
+            let law_chance = stationary(law, maker, 5, 64_000)[0];
+            (law_chance, rank_chance(law, maker, 64_000, &|x| x[0]))
+        };
+        let (still, still_rank) = chances(maker);
+        assert!(
+            still > 1e-3 && still_rank > 1e-3,
+            "{name}: {still} {still_rank}"
+        );
+        let (chance, rank) = chances(&restless);
+        assert!(chance < CAUGHT || rank < CAUGHT, "{name}: {chance} {rank}");
         // What is frozen does not change, and in the restless kernel does.
         assert!(frozen_holds(law, maker), "{name}");
         assert!(!frozen_holds(law, &restless), "{name}");

@@ -31,7 +31,9 @@ pub fn rank_chance(law: &dyn Law, maker: Maker, chains: usize, of: &dyn Fn(&[f64
         for lane in 0..LANES {
             let mut own = stream(1_000_000_000 + first + lane);
             let past = (own.unit() * LENGTH as f64) as usize;
-            let others = walks[0][..past].iter().chain(&walks[1][..LENGTH - 1 - past]);
+            let others = walks[0][..past]
+                .iter()
+                .chain(&walks[1][..LENGTH - 1 - past]);
             let others: Vec<f64> = others.map(|values| values[lane]).collect();
             counts[rank(centre[lane], &others, &mut own)] += 1.0;
         }

@@ -19,8 +19,9 @@ fn check(what: &str, law: &dyn Law, maker: Maker, steps: usize) {
 }
 
 fn check_ranks(what: &str, law: &dyn Law, maker: Maker) {
-    let functions: [&dyn Fn(&[f64]) -> f64; 3] =
-        [&|x| x[0], &|x| law.log_density(x), &|x| (x[0] - 1.0) * (x[0] - 1.0)];
+    let functions: [&dyn Fn(&[f64]) -> f64; 3] = [&|x| x[0], &|x| law.log_density(x), &|x| {
+        (x[0] - 1.0) * (x[0] - 1.0)
+    }];
     for of in functions {
         let chance = rank_chance(law, maker, 16_000, of);
         assert!(chance > LEAST, "{what}: chance {chance}");
@@ -28,7 +29,13 @@ fn check_ranks(what: &str, law: &dyn Law, maker: Maker) {
 }
 
 fn walk(n: usize, scale: f64, lanes: usize) -> Box<dyn Kernel> {
-    Box::new(RandomWalk::new((0..n).collect(), n, scale, Adapt::None, lanes))
+    Box::new(RandomWalk::new(
+        (0..n).collect(),
+        n,
+        scale,
+        Adapt::None,
+        lanes,
+    ))
 }
 
 /// A kernel after burn-in on the law, from places that the law's draws have nothing to do with.
@@ -45,7 +52,12 @@ fn burnt(mut kernel: Box<dyn Kernel>, law: &dyn Law, lanes: usize) -> Box<dyn Ke
 fn random_walk() {
     check("normal", &Standard(2), &|l| walk(2, 1.5, l), 5);
     check("two humps", &TwoHumps, &|l| walk(1, 2.0, l), 5);
-    check("log gamma", &LogGamma { jacobian: true }, &|l| walk(1, 1.5, l), 5);
+    check(
+        "log gamma",
+        &LogGamma { jacobian: true },
+        &|l| walk(1, 1.5, l),
+        5,
+    );
     check_ranks("two humps", &TwoHumps, &|l| walk(1, 2.0, l));
     check_ranks("correlated", &Correlated, &|l| walk(2, 1.0, l));
 }
@@ -70,9 +82,16 @@ fn slice() {
     check("wide", &TwoHumps, &|l| of(1, 20.0, 1000, l), 3);
     check("limit 3", &TwoHumps, &|l| of(1, 0.5, 3, l), 3);
     check("limit 1", &TwoHumps, &|l| of(1, 2.0, 1, l), 3);
-    check("log gamma", &LogGamma { jacobian: true }, &|l| of(1, 1.0, 1000, l), 3);
+    check(
+        "log gamma",
+        &LogGamma { jacobian: true },
+        &|l| of(1, 1.0, 1000, l),
+        3,
+    );
     check_ranks("limit 3", &TwoHumps, &|l| of(1, 0.5, 3, l));
-    check_ranks("log gamma", &LogGamma { jacobian: true }, &|l| of(1, 1.0, 8, l));
+    check_ranks("log gamma", &LogGamma { jacobian: true }, &|l| {
+        of(1, 1.0, 8, l)
+    });
     let maker = |l| burnt(of(2, 1.0, 1000, l), &Correlated, l);
     check("correlated after burn-in", &Correlated, &maker, 3);
 }
@@ -92,7 +111,12 @@ fn integers() {
     };
     check("counts", &Counts, &|l| counts(1.0, l), 5);
     check("counts, long steps", &Counts, &|l| counts(6.0, l), 5);
-    check("counts after burn-in", &Counts, &|l| burnt(counts(1.0, l), &Counts, l), 5);
+    check(
+        "counts after burn-in",
+        &Counts,
+        &|l| burnt(counts(1.0, l), &Counts, l),
+        5,
+    );
     check_ranks("counts", &Counts, &|l| counts(2.0, l));
     for gap in [false, true] {
         let law = Classes { gap };

@@ -5,7 +5,7 @@ use odograph::maths;
 use odograph::random::Stream;
 
 /// A law that can be drawn from exactly.
-pub trait Law {
+pub trait Law: Sync {
     fn kinds(&self) -> Vec<CoordinateKind>;
     fn log_density(&self, x: &[f64]) -> f64;
     fn draw(&self, stream: &mut Stream) -> Vec<f64>;
@@ -157,7 +157,9 @@ impl Law for LogGamma {
         }
     }
     fn draw(&self, stream: &mut Stream) -> Vec<f64> {
-        vec![maths::ln(-maths::ln(stream.open()) - maths::ln(stream.open()))]
+        vec![maths::ln(
+            -maths::ln(stream.open()) - maths::ln(stream.open()),
+        )]
     }
     fn uniforms(&self, x: &[f64], _: &mut Stream) -> Vec<f64> {
         vec![maths::gamma_p(2.0, maths::exp(x[0]))]
@@ -192,7 +194,13 @@ impl Law for Counts {
         vec![count]
     }
     fn uniforms(&self, x: &[f64], stream: &mut Stream) -> Vec<f64> {
-        let below = |k: f64| if k < 0.0 { 0.0 } else { maths::gamma_q(k + 1.0, MEAN) };
+        let below = |k: f64| {
+            if k < 0.0 {
+                0.0
+            } else {
+                maths::gamma_q(k + 1.0, MEAN)
+            }
+        };
         let (low, high) = (below(x[0] - 1.0), below(x[0]));
         vec![low + stream.unit() * (high - low)]
     }
@@ -235,17 +243,28 @@ impl Law for Classes {
     }
     fn draw(&self, stream: &mut Stream) -> Vec<f64> {
         let u = stream.unit();
-        let k = [0.1, 0.5, 0.7, 1.0].iter().position(|&c| u < c).unwrap_or(3);
+        let k = [0.1, 0.5, 0.7, 1.0]
+            .iter()
+            .position(|&c| u < c)
+            .unwrap_or(3);
         let class = self.values()[k];
         vec![class, class + normal(stream)]
     }
     fn uniforms(&self, x: &[f64], stream: &mut Stream) -> Vec<f64> {
-        let k = self.values().iter().position(|&value| value == x[0]).unwrap_or(0);
+        let k = self
+            .values()
+            .iter()
+            .position(|&value| value == x[0])
+            .unwrap_or(0);
         let below: f64 = CHANCES[..k].iter().sum();
         let mut marginal = 0.0;
         for (value, chance) in self.values().iter().zip(CHANCES) {
             marginal += chance * maths::normal_cdf(x[1] - value);
         }
-        vec![below + stream.unit() * CHANCES[k], marginal, maths::normal_cdf(x[1] - x[0])]
+        vec![
+            below + stream.unit() * CHANCES[k],
+            marginal,
+            maths::normal_cdf(x[1] - x[0]),
+        ]
     }
 }
