@@ -1,0 +1,151 @@
+//! What the draws say about the conditions. Statistics never prove: each sentence says what it could not have
+//! seen.
+
+use crate::course::{Condition, Standing};
+use crate::estimates::{Figure, Note, Summary};
+
+/// R-hat up to this does not speak against anything.
+const MIXED: f64 = 1.05;
+
+/// Adds the evidence of a finished point to a condition. What was proved, holds by construction or has failed
+/// stays as it is.
+pub(super) fn weigh(condition: Condition, summary: &Summary) -> Condition {
+    if matches!(
+        condition.standing,
+        Standing::Proved | Standing::ByConstruction | Standing::Failed
+    ) {
+        return condition;
+    }
+    let found = match condition.name {
+        "irreducible" | "recurrent" => reach(summary),
+        "start forgotten" => start(summary),
+        "integrable" => moment(summary, 1.0, "the mean"),
+        "second moment" | "moment above two" => moment(summary, 0.5, "the variance"),
+        _ => None,
+    };
+    let Some((standing, words)) = found else {
+        return condition;
+    };
+    let evidence = match condition.standing {
+        // "Nothing is known" is no longer so.
+        Standing::NotKnown => words,
+        _ => format!("{}; {words}", condition.evidence),
+    };
+    Condition {
+        name: condition.name,
+        standing,
+        evidence,
+    }
+}
+
+/// The first figure whose chains stand still or disagree, with the note.
+fn disagreement(summary: &Summary) -> Option<(&Figure, &Note)> {
+    summary.figures.iter().find_map(|figure| {
+        let note = figure
+            .estimate
+            .notes
+            .iter()
+            .find(|n| matches!(n, Note::AllStuck | Note::Stuck { .. } | Note::Stray { .. }))?;
+        Some((figure, note))
+    })
+}
+
+/// The figure with the largest of some statistic.
+fn largest(summary: &Summary, of: impl Fn(&Figure) -> Option<f64>) -> Option<(&Figure, f64)> {
+    let mut worst: Option<(&Figure, f64)> = None;
+    for figure in &summary.figures {
+        if let Some(x) = of(figure).filter(|x| worst.is_none_or(|(_, w)| *x > w)) {
+            worst = Some((figure, x));
+        }
+    }
+    worst
+}
+
+fn reach(summary: &Summary) -> Option<(Standing, String)> {
+    if let Some((figure, note)) = disagreement(summary) {
+        return Some((Standing::NotKnown, format!("{}: {note}", figure.name)));
+    }
+    if summary.chains < 2 {
+        return Some((
+            Standing::NotKnown,
+            "one chain alone cannot show whether another start would lead elsewhere".into(),
+        ));
+    }
+    let (figure, r_hat) = largest(summary, |f| f.estimate.r_hat)?;
+    let standing = if r_hat <= MIXED {
+        Standing::NotContradicted
+    } else {
+        Standing::NotKnown
+    };
+    Some((
+        standing,
+        format!(
+            "{} chains from different starts, largest R-hat {r_hat:.3} ({}); a region that no chain visited \
+             would not show",
+            summary.chains, figure.name
+        ),
+    ))
+}
+
+fn start(summary: &Summary) -> Option<(Standing, String)> {
+    if let Some((figure, note)) = disagreement(summary) {
+        return Some((Standing::Failed, format!("{}: {note}", figure.name)));
+    }
+    let (figure, r_hat) = largest(summary, |f| f.estimate.r_hat)?;
+    let standing = if r_hat <= MIXED {
+        Standing::NotContradicted
+    } else {
+        Standing::NotKnown
+    };
+    let what = if summary.chains < 2 {
+        "the halves of the one chain"
+    } else {
+        "the chains"
+    };
+    Some((
+        standing,
+        format!(
+            "largest R-hat {r_hat:.3} ({}); what {what} have in common, a wrong region too, would not show",
+            figure.name
+        ),
+    ))
+}
+
+/// A moment whose existence asks for a tail index under a bound.
+fn moment(summary: &Summary, bound: f64, what: &str) -> Option<(Standing, String)> {
+    if let Some(figure) = summary.figures.iter().find(|f| {
+        f.estimate
+            .notes
+            .iter()
+            .any(|n| matches!(n, Note::Infinite { .. } | Note::NotANumber { .. }))
+    }) {
+        return Some((
+            Standing::Failed,
+            format!("{}: some draws are infinite or not a number", figure.name),
+        ));
+    }
+    let Some((figure, index)) = largest(summary, |f| f.estimate.tail_index) else {
+        let bounded = !summary.figures.is_empty() && summary.figures.iter().all(|f| f.condition);
+        return bounded.then(|| {
+            (
+                Standing::Proved,
+                "a condition is 0 or 1: it has every moment".into(),
+            )
+        });
+    };
+    let (name, limit) = (&figure.name, if bound == 1.0 { "1" } else { "0.5" });
+    Some(if index < bound {
+        (
+            Standing::NotContradicted,
+            format!(
+                "largest tail index {index:.2} ({name}), under {limit}; a tail that begins beyond the draws would \
+                 not show"
+            ),
+        )
+    } else {
+        (
+            Standing::NotKnown,
+            format!("tail index {index:.2} ({name}), from {limit} on, speaks against {what}"),
+        )
+    })
+}
