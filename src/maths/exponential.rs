@@ -53,7 +53,7 @@ pub fn exp(x: f64) -> f64 {
     // 2^k itself may be out of range where the product isn't
     let half = (k * 0.5 + SHIFT) - SHIFT;
     let y = (y * two_to(half)) * two_to(k - half);
-    if x == x { y } else { x }
+    if x.is_nan() { x } else { y }
 }
 
 /// e^x - 1, within 1 ulp also near 0.
@@ -66,7 +66,7 @@ pub fn expm1(x: f64) -> f64 {
     let y = 2.0 * (high + low);
     let y = if x.abs() < 5e-17 { x } else { y };
     let y = if x > 709.79 { f64::INFINITY } else { y };
-    if x == x { y } else { x }
+    if x.is_nan() { x } else { y }
 }
 
 /// (e^x - 1) / 2 as a sum of two, for x from -700 to 720, not tiny.

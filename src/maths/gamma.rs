@@ -1,6 +1,6 @@
 //! ln of the gamma function (branch-free for positive arguments) and its derivative.
 
-use super::logarithm::ln;
+use super::logarithm::{ln, log1p};
 use super::pairs::polynomial;
 use super::tan;
 
@@ -72,6 +72,14 @@ pub(super) fn stirling_error(x: f64) -> f64 {
         return stirling_series(x);
     }
     ln_gamma_positive(x) - ((x - 0.5) * ln(x) - x + HALF_LN_TWO_PI)
+}
+
+/// ln Gamma(1 + a) for a >= 0, without cancellation near 0.
+pub(super) fn ln_gamma_one_plus(a: f64) -> f64 {
+    if a >= 0.5 {
+        return ln_gamma_positive(1.0 + a);
+    }
+    a * polynomial(a, &NEAR_TWO) - log1p(a)
 }
 
 /// The derivative of ln Gamma; NaN at 0 and the negative whole numbers. Within 6 ulp for x > 0; for x < 0

@@ -23,7 +23,7 @@ pub fn tanh(x: f64) -> f64 {
     let y = q + remainder * (1.0 + q);
     let y = if size < 1e-9 { size } else { y };
     let y = y.copysign(x);
-    if x == x { y } else { x }
+    if x.is_nan() { x } else { y }
 }
 
 /// The hyperbolic sine.

@@ -13,7 +13,7 @@ pub fn softplus(x: f64) -> f64 {
     let f = if over { 0.5 * (e - 1.0) } else { e };
     let tail = assemble(k, f, 0.0);
     let y = if x > 0.0 { x + tail } else { tail };
-    if x == x { y } else { x }
+    if x.is_nan() { x } else { y }
 }
 
 /// 1 / (1 + e^-x), within 2 ulp.

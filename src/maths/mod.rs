@@ -20,9 +20,11 @@ mod logistic;
 mod normal;
 mod pairs;
 mod power;
+mod root;
 mod rounding;
 mod spread;
 mod sum;
+mod tail;
 mod trigonometric;
 
 pub use beta::{ln_beta, ln_choose};

@@ -48,12 +48,12 @@ pub fn round(x: f64) -> f64 {
 #[inline(always)]
 pub fn minimum(a: f64, b: f64) -> f64 {
     let m = if a < b { a } else { b };
-    if a == a { m } else { a }
+    if a.is_nan() { a } else { m }
 }
 
 /// The greater of two; NaN when either is NaN. Of 0 and -0 the second is given.
 #[inline(always)]
 pub fn maximum(a: f64, b: f64) -> f64 {
     let m = if a > b { a } else { b };
-    if a == a { m } else { a }
+    if a.is_nan() { a } else { m }
 }
