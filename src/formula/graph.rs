@@ -114,7 +114,7 @@ impl Reduction {
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
 pub struct Matrix(pub(super) usize);
 
-#[derive(Debug)]
+#[derive(Debug, Clone)]
 pub(super) struct MatrixData {
     pub rows: Arc<Axis>,
     /// One slice of all rows for each column.
@@ -122,7 +122,7 @@ pub(super) struct MatrixData {
 }
 
 /// Values under construction. Numbers broadcast over vectors.
-#[derive(Debug, Default)]
+#[derive(Debug, Clone, Default)]
 pub struct Graph {
     pub(super) nodes: Vec<Node>,
     shapes: Vec<Shape>,

@@ -57,5 +57,8 @@ pub fn heading() {
 
 /// A line for a figure that has no plain counterpart.
 pub fn single(task: &str, unit: &str, value: f64, asked: &str) {
-    println!("{task:<44} {value:>12.4} {:>12} {unit:<12} {:>7}  {asked}", "", "");
+    println!(
+        "{task:<44} {value:>12.4} {:>12} {unit:<12} {:>7}  {asked}",
+        "", ""
+    );
 }

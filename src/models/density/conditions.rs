@@ -1,0 +1,60 @@
+//! What can be said of a density model before any draw.
+
+use super::declared::Declared;
+use super::posterior::Posterior;
+use crate::course::{Condition, Standing};
+use crate::methods::Sampler;
+
+/// Conditions of the model, then those of the sampler.
+pub fn of(declared: &Declared, posterior: &Posterior, sampler: &Sampler) -> Vec<Condition> {
+    let mut conditions = vec![finite_mass(declared, posterior), irreducible(posterior)];
+    conditions.extend(sampler.conditions());
+    conditions
+}
+
+fn finite_mass(declared: &Declared, posterior: &Posterior) -> Condition {
+    let flat: Vec<&str> = posterior
+        .unknowns
+        .iter()
+        .filter(|unknown| !unknown.proper)
+        .map(|unknown| unknown.name.as_str())
+        .collect();
+    let (standing, evidence) = if !flat.is_empty() {
+        let names = flat.join("`, `");
+        (
+            Standing::Assumed,
+            format!(
+                "`{names}` has a flat law of infinite mass: that the data make the posterior proper is not shown"
+            ),
+        )
+    } else if !declared.terms.is_empty() {
+        (
+            Standing::Assumed,
+            "every law has mass 1, but a further term of the log density need not be bounded"
+                .to_string(),
+        )
+    } else {
+        // With laws of mass 1 the posterior's mass is the prior predictive density of the data, finite for
+        // almost all data (continuous observations may make it infinite on a set of probability 0).
+        (Standing::ByConstruction, "every unknown has a law of mass 1 and the data enter by laws alone (finite for almost all data)".to_string())
+    };
+    Condition {
+        name: "finite mass",
+        standing,
+        evidence,
+    }
+}
+
+fn irreducible(posterior: &Posterior) -> Condition {
+    let integers = posterior.unknowns.iter().any(|unknown| unknown.integer);
+    let evidence = if integers {
+        "continuous moves reach every neighbourhood, integer moves every value, unless the density is 0 between parts of its support; a mode that no chain visited cannot be seen"
+    } else {
+        "the moves reach every neighbourhood of a connected support; that the support is connected is not shown, and a mode that no chain visited cannot be seen"
+    };
+    Condition {
+        name: "irreducible",
+        standing: Standing::Assumed,
+        evidence: evidence.to_string(),
+    }
+}

@@ -1,0 +1,202 @@
+//! Chains under way on a density.
+
+use super::Density;
+use crate::course::{Block, ChainSeed, Coordinate, Course, Phase, StartFault, State, Target};
+use crate::formula::Machine;
+use crate::methods::{Kernel, Reader, Walkers};
+use crate::random::{Purpose, Stream};
+use std::sync::Arc;
+
+/// The one NaN that is recorded: which bits arithmetic makes depends on the machine.
+const CANONICAL_NAN: f64 = f64::from_bits(0x7ff8_0000_0000_0000);
+
+/// The posterior as a target for kernels.
+struct Posterior {
+    lanes: usize,
+    coordinates: Arc<[Coordinate]>,
+    machine: Machine,
+}
+
+impl Target for Posterior {
+    fn lanes(&self) -> usize {
+        self.lanes
+    }
+    fn coordinates(&self) -> &[Coordinate] {
+        &self.coordinates
+    }
+    fn log_density(&mut self, position: &[f64], out: &mut [f64]) {
+        self.machine.run(position, out);
+        for value in out {
+            // Neither an undefined nor an infinite density is a place to go to.
+            if !value.is_finite() {
+                *value = f64::NEG_INFINITY;
+            }
+        }
+    }
+}
+
+/// Chains in lockstep on a density.
+pub struct Lanes {
+    model: Arc<Density>,
+    target: Posterior,
+    kernel: Box<dyn Kernel>,
+    walkers: Walkers,
+    /// Draws made since the start of burn-in, a lane.
+    drawn: Vec<u64>,
+    recorder: Recorder,
+}
+
+/// What turns positions into recorded quantities.
+struct Recorder {
+    keys: Vec<[u8; 32]>,
+    machine: Machine,
+    parameters: Vec<Machine>,
+    inputs: Vec<f64>,
+    outputs: Vec<f64>,
+}
+
+impl Lanes {
+    pub fn start(model: Arc<Density>, chains: &[ChainSeed]) -> Result<Lanes, StartFault> {
+        let lanes = chains.len();
+        let dimension = model.posterior.coordinates.len();
+        let mut position = vec![0.0; dimension * lanes];
+        for (lane, seed) in chains.iter().enumerate() {
+            let start = model.start.of_chain(&model.posterior, seed)?;
+            for (c, z) in start.into_iter().enumerate() {
+                position[c * lanes + lane] = z;
+            }
+        }
+        let mut target = Posterior {
+            lanes,
+            coordinates: model.posterior.coordinates.clone().into(),
+            machine: model.posterior.target.machine(lanes),
+        };
+        let streams = chains
+            .iter()
+            .map(|seed| Stream::new(&seed.stream_key, Purpose::Walk))
+            .collect();
+        let walkers = Walkers::new(&mut target, position, streams);
+        let machine = model.recorded.program.machine(lanes);
+        let recorder = Recorder {
+            keys: chains.iter().map(|seed| seed.stream_key).collect(),
+            inputs: vec![0.0; model.recorded.program.inputs() * lanes],
+            outputs: vec![0.0; model.recorded.quantities.len() * lanes],
+            parameters: model
+                .recorded
+                .predictions
+                .iter()
+                .map(|p| p.parameters.machine(lanes))
+                .collect(),
+            machine,
+        };
+        let kernel = model.sampler.kernel(lanes);
+        Ok(Lanes {
+            model,
+            target,
+            kernel,
+            walkers,
+            drawn: vec![0; lanes],
+            recorder,
+        })
+    }
+
+    /// Computes the recorded quantities at the present position into `recorder.outputs`.
+    fn record(&mut self) {
+        let lanes = self.walkers.lanes;
+        let recorder = &mut self.recorder;
+        let mut at = self.walkers.position.len();
+        if recorder.parameters.is_empty() {
+            recorder
+                .machine
+                .run(&self.walkers.position, &mut recorder.outputs);
+            return;
+        }
+        recorder.inputs[..at].copy_from_slice(&self.walkers.position);
+        let predictions = &self.model.recorded.predictions;
+        for (quantity, (prediction, machine)) in
+            predictions.iter().zip(&mut recorder.parameters).enumerate()
+        {
+            let mut numbers = vec![0.0; prediction.parameters.outputs() * lanes];
+            machine.run(&self.walkers.position, &mut numbers);
+            for lane in 0..lanes {
+                let purpose = Purpose::Prediction {
+                    quantity: quantity as u64,
+                    draw: self.drawn[lane],
+                };
+                let mut stream = Stream::new(&recorder.keys[lane], purpose);
+                for element in 0..prediction.len {
+                    let mut parameters = Vec::with_capacity(prediction.widths.len());
+                    let mut slot = 0;
+                    for &width in &prediction.widths {
+                        let own = if width == 1 { 0 } else { element };
+                        parameters.push(numbers[(slot + own) * lanes + lane]);
+                        slot += width;
+                    }
+                    let value = prediction.law.draw(&mut stream, &parameters);
+                    recorder.inputs[at + element * lanes + lane] =
+                        value.expect("only laws with finite mass are predicted");
+                }
+            }
+            at += prediction.len * lanes;
+        }
+        recorder
+            .machine
+            .run(&recorder.inputs, &mut recorder.outputs);
+    }
+}
+
+impl Course for Lanes {
+    fn chains(&self) -> usize {
+        self.walkers.lanes
+    }
+
+    fn advance(&mut self, phase: Phase, draws: usize) -> Vec<Block> {
+        let lanes = self.walkers.lanes;
+        let quantities = self.model.recorded.quantities.len();
+        let mut blocks = vec![
+            Block {
+                draws,
+                values: vec![0.0; draws * quantities]
+            };
+            lanes
+        ];
+        for draw in 0..draws {
+            for _ in 0..self.model.every {
+                self.kernel.step(&mut self.target, &mut self.walkers, phase);
+            }
+            self.record();
+            for (quantity, values) in self.recorder.outputs.chunks_exact(lanes).enumerate() {
+                for (block, &value) in blocks.iter_mut().zip(values) {
+                    block.values[quantity * draws + draw] =
+                        if value.is_nan() { CANONICAL_NAN } else { value };
+                }
+            }
+            for drawn in &mut self.drawn {
+                *drawn += 1;
+            }
+        }
+        blocks
+    }
+
+    fn save(&self, chain: usize) -> State {
+        let mut state = State {
+            frozen: Vec::new(),
+            moving: self.drawn[chain].to_le_bytes().to_vec(),
+        };
+        self.walkers.save(chain, &mut state);
+        self.kernel.save(chain, &mut state);
+        state
+    }
+
+    fn load(&mut self, chain: usize, state: &State) -> Result<(), String> {
+        let mut reader = Reader::new(state);
+        self.drawn[chain] = reader.moving.count()?;
+        self.walkers.load(chain, &mut reader)?;
+        self.kernel.load(chain, &mut reader)?;
+        reader.finish()
+    }
+
+    fn notes(&self, chain: usize) -> Vec<(String, f64)> {
+        self.kernel.notes(chain)
+    }
+}

@@ -1,0 +1,243 @@
+//! The sections of a density model as they stand in the study: parsed, not yet given a meaning.
+
+use crate::formula::{Expr, parse};
+use crate::place::{Fault, Faults, Text};
+use crate::reading::{Content, Section, Value};
+
+/// How many values an unknown or a prediction has.
+#[derive(Debug, Clone)]
+pub enum Per {
+    /// One value for each row of a table.
+    Rows(Text),
+    /// One value for each level of a column, or for each pair of levels of two.
+    Levels(Vec<Text>),
+    Count(usize),
+}
+
+/// An entry of `[model.unknown]` or of `[predict]`.
+#[derive(Debug)]
+pub struct LawEntry {
+    pub name: Text,
+    pub law: Expr,
+    pub per: Option<Per>,
+    pub unit: Option<String>,
+}
+
+/// An entry of `[model.define]` or `[model.term]`.
+#[derive(Debug)]
+pub struct FormulaEntry {
+    pub name: Text,
+    pub formula: Expr,
+}
+
+/// An entry of `[model.observed]`.
+#[derive(Debug)]
+pub struct ObservedEntry {
+    pub name: Text,
+    pub of: Expr,
+    pub law: Expr,
+    pub right: Option<Expr>,
+    pub left: Option<Expr>,
+    pub interval: Option<Expr>,
+    pub upper: Option<Expr>,
+    pub entered: Option<Expr>,
+    pub weight: Option<Expr>,
+}
+
+/// `[model]` and `[predict]`.
+#[derive(Debug, Default)]
+pub struct Declared {
+    pub constants: Vec<(Text, f64)>,
+    pub unknowns: Vec<LawEntry>,
+    pub definitions: Vec<FormulaEntry>,
+    pub observed: Vec<ObservedEntry>,
+    pub terms: Vec<FormulaEntry>,
+    pub predictions: Vec<LawEntry>,
+}
+
+/// Most values that one unknown may have: more is taken for a slip.
+const MOST_ELEMENTS: u64 = 1_000_000;
+
+impl Declared {
+    /// Reads both sections; everything that could be read is there, with a fault for everything else.
+    pub fn read(model: &Section, predict: Option<&Section>, faults: &mut Faults) -> Declared {
+        let mut declared = Declared::default();
+        for (name, value) in entries(model, "constant", faults) {
+            if let (true, Some(number)) = (named_well(&name, faults), value.number(faults)) {
+                declared.constants.push((name, number));
+            }
+        }
+        for (name, value) in entries(model, "unknown", faults) {
+            declared.unknowns.extend(law_entry(name, &value, faults));
+        }
+        for (name, value) in entries(model, "define", faults) {
+            declared
+                .definitions
+                .extend(formula_entry(name, &value, faults));
+        }
+        for (name, value) in entries(model, "observed", faults) {
+            declared
+                .observed
+                .extend(observed_entry(name, &value, faults));
+        }
+        for (name, value) in entries(model, "term", faults) {
+            declared.terms.extend(formula_entry(name, &value, faults));
+        }
+        model.finish(faults);
+        for (name, value) in predict.map(Section::entries).unwrap_or_default() {
+            declared.predictions.extend(law_entry(name, &value, faults));
+        }
+        declared
+    }
+}
+
+fn entries(model: &Section, key: &str, faults: &mut Faults) -> Vec<(Text, Value)> {
+    model
+        .section(key, faults)
+        .map(|section| section.entries())
+        .unwrap_or_default()
+}
+
+/// Names that formulas give another meaning.
+const RESERVED: [&str; 4] = ["and", "or", "not", "if"];
+
+fn named_well(name: &Text, faults: &mut Faults) -> bool {
+    let mut letters = name.text.chars();
+    let shaped = letters.next().is_some_and(|c| c.is_ascii_lowercase())
+        && letters.all(|c| c.is_ascii_lowercase() || c.is_ascii_digit() || c == '_');
+    let fault = Fault::at(
+        name.place.clone(),
+        format!("`{}` can't be used as a name in formulas", name.text),
+    );
+    if !shaped {
+        faults.push(fault.label("not a name").help(
+            "names begin with a small letter a to z and go on with small letters, digits and _",
+        ));
+    } else if RESERVED.contains(&name.text.as_str()) {
+        faults.push(
+            fault
+                .label("a word of the formula language")
+                .help("choose another name"),
+        );
+    } else {
+        return true;
+    }
+    false
+}
+
+fn formula(section: &Section, key: &str, faults: &mut Faults) -> Option<Expr> {
+    parse(&section.text(key, faults)?, faults)
+}
+
+fn needed_formula(
+    section: &Section,
+    key: &str,
+    meaning: &str,
+    faults: &mut Faults,
+) -> Option<Expr> {
+    let text = section.need(key, meaning, faults)?.text(faults)?;
+    parse(&text, faults)
+}
+
+/// `"law"` alone, or `{ law = "…", per = …, unit = "…" }`.
+fn law_entry(name: Text, value: &Value, faults: &mut Faults) -> Option<LawEntry> {
+    let good_name = named_well(&name, faults);
+    if let Content::Text(text) = &value.content {
+        let law = parse(text, faults)?;
+        return good_name.then_some(LawEntry {
+            name,
+            law,
+            per: None,
+            unit: None,
+        });
+    }
+    let section = value.section(faults)?;
+    let law = needed_formula(
+        &section,
+        "law",
+        "the law it follows, such as \"normal(mean = 0, sd = 1)\"",
+        faults,
+    );
+    let per = section.value("per").map(|value| per(&value, faults));
+    let unit = section.text("unit", faults).map(|text| text.text);
+    section.finish(faults);
+    let per = match per {
+        Some(None) => return None,
+        Some(Some(per)) => Some(per),
+        None => None,
+    };
+    good_name.then_some(LawEntry {
+        name,
+        law: law?,
+        per,
+        unit,
+    })
+}
+
+fn per(value: &Value, faults: &mut Faults) -> Option<Per> {
+    match &value.content {
+        Content::Text(text) if text.text.contains('.') => Some(Per::Levels(vec![text.clone()])),
+        Content::Text(text) => Some(Per::Rows(text.clone())),
+        Content::Integer(_) => value
+            .count(1..=MOST_ELEMENTS, faults)
+            .map(|count| Per::Count(count as usize)),
+        Content::List(_) => {
+            let texts = value.texts(faults)?;
+            if texts.len() == 2 && texts.iter().all(|text| text.text.contains('.')) {
+                return Some(Per::Levels(texts));
+            }
+            let fault = Fault::at(value.place.clone(), "a list under `per` names two columns")
+                .label("not two columns")
+                .help("write per = [\"table.column\", \"table.other\"] for a value per pair of their levels");
+            faults.push(fault);
+            None
+        }
+        _ => {
+            value.refuse(
+                "a table, a column such as \"table.column\", two columns, or a count",
+                faults,
+            );
+            None
+        }
+    }
+}
+
+fn formula_entry(name: Text, value: &Value, faults: &mut Faults) -> Option<FormulaEntry> {
+    let good_name = named_well(&name, faults);
+    let formula = parse(&value.text(faults)?, faults)?;
+    good_name.then_some(FormulaEntry { name, formula })
+}
+
+fn observed_entry(name: Text, value: &Value, faults: &mut Faults) -> Option<ObservedEntry> {
+    let section = value.section(faults)?;
+    let of = needed_formula(
+        &section,
+        "of",
+        "what was observed, such as \"table.column\"",
+        faults,
+    );
+    let law = needed_formula(&section, "law", "the law of what was observed", faults);
+    let mut optional = |key: &str| formula(&section, key, faults);
+    let (right, left) = (optional("right"), optional("left"));
+    let (interval, upper) = (optional("interval"), optional("upper"));
+    let (entered, weight) = (optional("entered"), optional("weight"));
+    section.finish(faults);
+    if let (true, false) = (section.has("interval"), section.has("upper")) {
+        let place = section.key_place("interval").expect("the key is there");
+        let fault = Fault::at(place, "`interval` needs `upper`")
+            .label("between `of` and what?")
+            .help("add `upper`: where each interval ends, such as upper = \"table.seen\"");
+        faults.push(fault);
+    }
+    Some(ObservedEntry {
+        name,
+        of: of?,
+        law: law?,
+        right,
+        left,
+        interval,
+        upper,
+        entered,
+        weight,
+    })
+}

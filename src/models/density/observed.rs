@@ -1,0 +1,203 @@
+//! What was observed: its law, censoring, delayed entry and weights, as one term of the log density.
+
+use super::declared::ObservedEntry;
+use super::names::Names;
+use super::unknown::{bounds, fits, summed};
+use crate::formula::{Expr, Graph, Kind, LawTerm, Shape, Term, lower, lower_law};
+use crate::laws::{Algebra, Value};
+use crate::maths::{Binary, Ternary, Unary};
+use crate::place::{Fault, Faults};
+
+/// The summed log density of an observed entry.
+///
+/// A right-censored row contributes the log probability of a value above `of`, a left-censored one of a
+/// value up to `of`, an interval-censored one of a value above `of` and up to `upper`; a row that entered
+/// late is taken given that its value is above `entered`; all times the row's weight.
+pub fn observe(
+    entry: &ObservedEntry,
+    names: &Names,
+    graph: &mut Graph,
+    faults: &mut Faults,
+) -> Option<Value> {
+    let before = faults.0.len();
+    let of = lower(&entry.of, names, graph, faults);
+    let law = lower_law(&entry.law, names, graph, faults);
+    let shape = of.as_ref().map(|of| of.shape.clone());
+    let mut part = |expr: &Option<Expr>, kind: Kind, what: &str| {
+        let term = lower(expr.as_ref()?, names, graph, faults)?;
+        checked(expr.as_ref()?, term, kind, shape.as_ref(), what, faults)
+    };
+    let right = part(&entry.right, Kind::Condition, "right");
+    let left = part(&entry.left, Kind::Condition, "left");
+    let interval = part(&entry.interval, Kind::Condition, "interval");
+    let upper = part(&entry.upper, Kind::Number, "upper");
+    let entered = part(&entry.entered, Kind::Number, "entered");
+    let weight = part(&entry.weight, Kind::Number, "weight");
+    let (of, law) = (of?, law?);
+    if faults.0.len() > before {
+        return None;
+    }
+    if !fits(&law.shape, &of.shape) {
+        let fault = Fault::at(
+            law.place.clone(),
+            format!(
+                "the law has {}, `of` {}",
+                law.shape.words(),
+                of.shape.words()
+            ),
+        )
+        .label(law.shape.words())
+        .related(entry.of.place.clone(), of.shape.words())
+        .help(
+            "index the parameters by a column of the observed table, such as effect[table.column]",
+        );
+        faults.push(fault);
+        return None;
+    }
+    let exact = right.is_none() && left.is_none() && interval.is_none();
+    check_support(entry, &of, &law, exact, graph, faults);
+
+    let mut row = law.log_density(graph, of.value);
+    if let Some(where_) = left {
+        let below = cumulative(&law.ln_distribution(graph, of.value), entry, &law, faults)?;
+        row = graph.ternary(Ternary::Select, where_, below, row);
+    }
+    if let (Some(where_), Some(upper)) = (interval, upper) {
+        let between = cumulative(
+            &law.ln_interval(graph, of.value, upper),
+            entry,
+            &law,
+            faults,
+        )?;
+        row = graph.ternary(Ternary::Select, where_, between, row);
+    }
+    if let Some(where_) = right {
+        let above = cumulative(&law.ln_survival(graph, of.value), entry, &law, faults)?;
+        row = graph.ternary(Ternary::Select, where_, above, row);
+    }
+    if let Some(entered) = entered {
+        let alive = cumulative(&law.ln_survival(graph, entered), entry, &law, faults)?;
+        row = graph.binary(Binary::Subtract, row, alive);
+    }
+    if let Some(weight) = weight {
+        // A row of weight 0 takes no part, even where its density is 0.
+        let weighted = graph.binary(Binary::Multiply, weight, row);
+        let zero = graph.constant(0.0);
+        let counts = graph.binary(Binary::NotEqual, weight, zero);
+        row = graph.ternary(Ternary::Select, counts, weighted, zero);
+    }
+    Some(summed(graph, row, &of.shape))
+}
+
+fn cumulative(
+    value: &Option<Value>,
+    entry: &ObservedEntry,
+    law: &LawTerm,
+    faults: &mut Faults,
+) -> Option<Value> {
+    if value.is_none() {
+        let fault = Fault::at(
+            law.place.clone(),
+            format!(
+                "`{}` has no distribution function: it can't be censored or entered late",
+                law.law.name()
+            ),
+        )
+        .label("no distribution function")
+        .related(entry.name.place.clone(), "of this entry");
+        faults.push(fault);
+    }
+    *value
+}
+
+fn checked(
+    expr: &Expr,
+    term: Term,
+    kind: Kind,
+    of: Option<&Shape>,
+    what: &str,
+    faults: &mut Faults,
+) -> Option<Value> {
+    if term.kind != kind {
+        let (is, wanted) = match kind {
+            Kind::Condition => ("a number", "a condition, such as t.status == 0"),
+            Kind::Number => ("a condition", "a number or a column"),
+        };
+        faults.push(
+            Fault::at(expr.place.clone(), format!("`{what}` is {is}"))
+                .label(is)
+                .help(format!("write {wanted}")),
+        );
+        return None;
+    }
+    if let Some(of) = of
+        && !fits(&term.shape, of)
+    {
+        let fault = Fault::at(
+            expr.place.clone(),
+            format!("`{what}` has {}, `of` {}", term.shape.words(), of.words()),
+        )
+        .label(term.shape.words());
+        faults.push(fault);
+        return None;
+    }
+    Some(term.value)
+}
+
+/// Observed values that the law gives no mass to whatever the unknowns are: a slip, found before any draw.
+fn check_support(
+    entry: &ObservedEntry,
+    of: &Term,
+    law: &LawTerm,
+    exact: bool,
+    graph: &mut Graph,
+    faults: &mut Faults,
+) {
+    let Some(values) = graph.known_values(of.value).map(|values| values.to_vec()) else {
+        return;
+    };
+    let (lower, upper) = bounds(law, graph);
+    let known = |bound: Option<Value>, graph: &Graph| {
+        bound.and_then(|b| graph.known_values(b).map(|v| v.to_vec()))
+    };
+    let (lower, upper) = (known(lower, graph), known(upper, graph));
+    let at = |bound: &Option<Vec<f64>>, i: usize| {
+        bound.as_ref().and_then(|v| v.get(i).or(v.first()).copied())
+    };
+    let mut wrong: Vec<(usize, f64, String)> = Vec::new();
+    for (i, &value) in values.iter().enumerate() {
+        let whole = value == Unary::Floor.apply(value);
+        let why = match (at(&lower, i), at(&upper, i)) {
+            _ if value.is_nan() => "is not a number".to_string(),
+            _ if !exact => continue,
+            (Some(lower), _) if value < lower => format!("lies below {lower}"),
+            (_, Some(upper)) if value > upper => format!("lies above {upper}"),
+            _ if law.law.support().integer && !whole => "is not a whole number".to_string(),
+            _ => continue,
+        };
+        wrong.push((i, value, why));
+    }
+    let Some((i, value, why)) = wrong.first() else {
+        return;
+    };
+    let which = match &of.shape {
+        Shape::Number => "the value".to_string(),
+        shape => super::axis::element_name("row ", shape, *i).replace(['[', ']'], ""),
+    };
+    let more = match wrong.len() {
+        1 => String::new(),
+        n => format!(" (and {} more)", n - 1),
+    };
+    let fault = Fault::at(
+        entry.of.place.clone(),
+        format!(
+            "`{}` can't have been observed under `{}`: {which}, {value}, {why}{more}",
+            entry.name.text,
+            law.law.name()
+        ),
+    )
+    .label("outside the law's support")
+    .related(law.place.clone(), "this law gives it no mass")
+    .help("mend the data, or take a law that allows the value");
+    faults.push(fault);
+}
