@@ -28,22 +28,50 @@ pub fn figure(value: Option<f64>, error: Option<f64>) -> String {
 
 fn with_error(value: f64, error: f64) -> String {
     let (digits, place) = rounded_up(error);
-    // The power of ten of the leading digit of the value, once rounded to the place of the error.
-    let leading = leading_power(value, place);
-    if place > 0 || leading.is_some_and(|p| p >= 7) || leading.is_none_or(|p| p < -4) && place < -4
-    {
-        let power = leading.unwrap_or(place + digits.len() as i32 - 1);
-        let power = if power < place {
-            place + digits.len() as i32 - 1
+    written(value, place, digits.len(), &format!("({digits})"))
+}
+
+/// A value rounded at a power of ten, without an error: `rounded(0.02118, -3)` is 0.021.
+pub fn rounded(value: f64, place: i32) -> String {
+    if value.is_nan() {
+        "\u{2013}".into()
+    } else if value.is_infinite() {
+        if value > 0.0 {
+            "inf".into()
         } else {
-            power
+            "-inf".into()
+        }
+    } else {
+        written(value, place, 1, "")
+    }
+}
+
+/// The power of ten at which numbers that differ by about `width` should be rounded: two digits of it, or
+/// three where the first is a 1 or a 2.
+pub fn place_for(width: f64) -> Option<i32> {
+    if !(width.is_finite() && width > 0.0) {
+        return None;
+    }
+    let (two, place) = ceil_to(width, 2);
+    Some(if two < 30 { place - 1 } else { place })
+}
+
+/// The value rounded at a place, with a mark before the power of ten, if there is one.
+fn written(value: f64, place: i32, digits: usize, mark: &str) -> String {
+    let highest = place + digits as i32 - 1;
+    // The power of ten of the leading digit of the value, once rounded.
+    let leading = leading_power(value, place);
+    let small = leading.unwrap_or(highest) < -4 && highest < -4;
+    if place > 0 || small || leading.is_some_and(|p| p >= 7) {
+        let power = match leading {
+            Some(power) if power >= place => power,
+            _ => highest,
         };
         let decimals = usize::try_from(power - place).unwrap_or(0);
-        let mantissa = shifted(value, power, decimals);
-        format!("{mantissa}({digits})e{power}")
+        format!("{}{mark}e{power}", shifted(value, power, decimals))
     } else {
         let decimals = usize::try_from(-place).unwrap_or(0);
-        format!("{}({digits})", unsigned_zero(format!("{value:.decimals$}")))
+        format!("{}{mark}", unsigned_zero(format!("{value:.decimals$}")))
     }
 }
 
@@ -163,7 +191,7 @@ fn plain(value: f64) -> String {
 }
 
 /// Three significant digits.
-pub(crate) fn three_digits(value: f64) -> String {
+pub fn three_digits(value: f64) -> String {
     if value == 0.0 {
         return "0".into();
     }
@@ -229,6 +257,18 @@ mod tests {
         assert_eq!(f(0.0, 0.004), "0.000(4)");
         assert_eq!(f(1e-9, 3e-7), "0(3)e-7");
         assert_eq!(f(-90.0, 100.0), "-9(10)e1");
+    }
+
+    #[test]
+    fn rounding_at_a_place() {
+        assert_eq!(rounded(0.02118, -3), "0.021");
+        assert_eq!(rounded(-0.0002, -3), "0.000");
+        assert_eq!(rounded(123_456.0, 2), "1.235e5");
+        assert_eq!(rounded(2.118e-9, -11), "2.12e-9");
+        assert_eq!(rounded(f64::INFINITY, 0), "inf");
+        assert_eq!(place_for(0.097), Some(-3));
+        assert_eq!(place_for(0.14), Some(-3));
+        assert_eq!(place_for(0.0), None);
     }
 
     #[test]

@@ -83,7 +83,7 @@ impl Note {
 }
 
 /// A count with commas: 12,345.
-pub(super) fn count(n: u64) -> String {
+pub fn count(n: u64) -> String {
     let digits = n.to_string();
     let mut out = String::new();
     for (i, c) in digits.chars().enumerate() {
@@ -96,7 +96,7 @@ pub(super) fn count(n: u64) -> String {
 }
 
 /// A number in a few digits, for sentences.
-pub(super) fn short(x: f64) -> String {
+pub(crate) fn short(x: f64) -> String {
     let size = if x < 0.0 { -x } else { x };
     if x == 0.0 {
         "0".into()

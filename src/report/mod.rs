@@ -1,1 +1,20 @@
-//! Pure functions of plan, summary and grounds: tables.
+//! What a reader sees, as pure functions of plan, summaries and grounds: `summary.json`, `summary.csv`,
+//! `grounds.json` and plain text for a terminal.
+
+mod csv;
+mod figures;
+mod grounds_text;
+mod json;
+mod layout;
+mod sweep;
+mod text;
+
+pub use csv::summary_csv;
+pub use figures::figures_text;
+pub use grounds_text::grounds_text;
+pub use json::{grounds_json, summary_json};
+pub use sweep::sweep_text;
+pub use text::{FOOT, run_text};
+
+/// Columns of plain text.
+pub const WIDTH: usize = 100;

@@ -1,0 +1,95 @@
+//! The grounds of a point as plain text.
+
+use super::layout::{Side, pad, wrap};
+use crate::course::Condition;
+use crate::grounds::{Claim, Grounds, standing_word};
+
+/// Each claim with its standing, then the conditions it rests on. A condition already told under an earlier
+/// claim is only named.
+pub fn grounds_text(grounds: &Grounds, page: usize) -> String {
+    let mut out = String::new();
+    let mut told: Vec<&str> = Vec::new();
+    for claim in &grounds.claims {
+        out.push_str(&format!(
+            "{}: {}\n",
+            capital(claim.name),
+            standing_word(claim.standing)
+        ));
+        claim_text(&mut out, claim, grounds, &mut told, page);
+    }
+    if !grounds.accepted.conditions.is_empty() {
+        let text = format!(
+            "Accepted by the study in spite of their standing: {}; because: {}",
+            grounds.accepted.conditions.join(", "),
+            grounds.accepted.because
+        );
+        out.push_str(&wrap(&text, page, 0, 2));
+    }
+    out
+}
+
+fn claim_text<'a>(
+    out: &mut String,
+    claim: &'a Claim,
+    grounds: &Grounds,
+    told: &mut Vec<&'a str>,
+    page: usize,
+) {
+    let mut again: Vec<&str> = Vec::new();
+    for condition in &claim.conditions {
+        if told.contains(&condition.name) {
+            again.push(condition.name);
+        }
+    }
+    if !again.is_empty() {
+        out.push_str(&wrap(
+            &format!("rests on {} (above)", again.join(", ")),
+            page,
+            2,
+            4,
+        ));
+    }
+    for condition in &claim.conditions {
+        if !told.contains(&condition.name) {
+            told.push(condition.name);
+            line(out, condition, grounds, 2, page);
+        }
+    }
+    for (i, way) in claim.ways.iter().enumerate() {
+        out.push_str(if i == 0 { "  and either\n" } else { "  or\n" });
+        for condition in way {
+            told.push(condition.name);
+            line(out, condition, grounds, 4, page);
+        }
+    }
+}
+
+fn line(out: &mut String, condition: &Condition, grounds: &Grounds, indent: usize, page: usize) {
+    let accepted = if grounds.accepts(condition.name) {
+        " (accepted)"
+    } else {
+        ""
+    };
+    let head = format!(
+        "{}{}{}{accepted}  ",
+        " ".repeat(indent),
+        pad(condition.name, 22, Side::Left),
+        pad(standing_word(condition.standing), 16, Side::Left)
+    );
+    let deep = indent + 40;
+    let text = wrap(&condition.evidence, page, deep, deep);
+    out.push_str(&head);
+    if accepted.is_empty() {
+        out.push_str(text.trim_start_matches(' '));
+    } else {
+        out.push('\n');
+        out.push_str(&text);
+    }
+}
+
+fn capital(text: &str) -> String {
+    let mut chars = text.chars();
+    chars
+        .next()
+        .map_or(String::new(), |c| c.to_uppercase().chain(chars).collect())
+}

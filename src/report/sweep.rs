@@ -1,0 +1,109 @@
+//! A sweep as plain text: one line a point, the swept values, then value and Monte Carlo error of each
+//! quantity.
+
+use super::layout::{Column, Side, cell, table};
+use crate::canon::Json;
+use crate::estimates::{GoalState, Summary, count, figure};
+use crate::plan::Give;
+
+/// Tables over the first `rows` points, as many quantities at a time as the page holds.
+pub fn sweep_text(points: &[Summary], rows: usize, page: usize) -> String {
+    let shown = &points[..if rows < points.len() {
+        rows
+    } else {
+        points.len()
+    }];
+    let mut columns: Vec<Column> = Vec::new();
+    for (name, unit) in quantities(points) {
+        let unit = unit.map_or(String::new(), |u| format!("\n{u}"));
+        let mut column = Column::new(&format!("{name}{unit}"), Side::Right);
+        column.cells = shown
+            .iter()
+            .map(|p| {
+                let found = p.figures.iter().find(|f| cell(&f.name) == name);
+                found.map_or(String::new(), |f| figure(f.estimate.value, f.estimate.mcse))
+            })
+            .collect();
+        columns.push(column);
+    }
+    let mut out = String::new();
+    let mut left = columns.into_iter().peekable();
+    while left.peek().is_some() {
+        let mut block = axes(shown);
+        let mut wide: usize = block.iter().map(|c| c.wide() + 2).sum();
+        let narrow = block.len();
+        while let Some(next) = left.peek() {
+            wide += next.wide() + 2;
+            if wide > page + 2 && block.len() > narrow {
+                break;
+            }
+            block.extend(left.next());
+        }
+        if !out.is_empty() {
+            out.push('\n');
+        }
+        out.push_str(&table(&block, page));
+    }
+    if shown.len() < points.len() {
+        out.push_str(&format!(
+            "... and {} more points\n",
+            count((points.len() - shown.len()) as u64)
+        ));
+    }
+    out
+}
+
+/// Quantities whose value is asked for, in the order of their first appearance.
+fn quantities(points: &[Summary]) -> Vec<(String, Option<String>)> {
+    let mut out: Vec<(String, Option<String>)> = Vec::new();
+    for f in points
+        .iter()
+        .flat_map(|p| &p.figures)
+        .filter(|f| f.give.contains(&Give::Value))
+    {
+        let name = cell(&f.name);
+        if out.iter().all(|(n, _)| *n != name) {
+            out.push((name, f.unit.as_deref().map(cell)));
+        }
+    }
+    out
+}
+
+/// The swept values, by the last part of their paths where that is enough; and the goal, where one was missed.
+fn axes(points: &[Summary]) -> Vec<Column> {
+    let paths: Vec<&str> = points.first().map_or(Vec::new(), |p| {
+        p.values.iter().map(|(k, _)| k.as_str()).collect()
+    });
+    let last = |path: &str| path.rsplit('.').next().unwrap_or(path).to_string();
+    let mut columns: Vec<Column> = paths
+        .iter()
+        .enumerate()
+        .map(|(axis, path)| {
+            let short = last(path);
+            let unique = paths.iter().filter(|p| last(p) == short).count() == 1;
+            let mut column = Column::new(&cell(if unique { &short } else { path }), Side::Left);
+            column.cells = points
+                .iter()
+                .map(|p| {
+                    p.values
+                        .get(axis)
+                        .map_or(String::new(), |(_, v)| value_text(v))
+                })
+                .collect();
+            column
+        })
+        .collect();
+    if points.iter().any(|p| p.goal == GoalState::Missed) {
+        let mut column = Column::new("goal", Side::Left);
+        column.cells = points.iter().map(|p| p.goal.word().into()).collect();
+        columns.push(column);
+    }
+    columns
+}
+
+fn value_text(value: &Json) -> String {
+    match value {
+        Json::Text(text) => cell(text),
+        other => other.canonical(),
+    }
+}

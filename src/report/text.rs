@@ -1,0 +1,88 @@
+//! What a run ends with on a terminal.
+
+use super::figures::figures_text;
+use super::grounds_text::grounds_text;
+use super::layout::wrap;
+use super::sweep::sweep_text;
+use crate::estimates::{GoalState, Summary, count};
+use crate::grounds::Grounds;
+
+/// Stands under every report.
+pub const FOOT: &str = "These figures describe the model as stated. Where one of them bears on safety, local codes and \
+                        licensed practice decide.";
+
+/// Points of a sweep shown on a terminal.
+const POINTS: usize = 60;
+
+/// Title and question, then the figures of the only point or a table over the points, then the grounds.
+pub fn run_text(title: &str, question: &str, points: &[(Summary, Grounds)], page: usize) -> String {
+    let mut out = String::new();
+    for line in [title, question] {
+        if !line.trim().is_empty() {
+            out.push_str(&wrap(line, page, 0, 0));
+        }
+    }
+    match points {
+        [] => out.push_str("\nNo point was finished.\n"),
+        [(summary, grounds)] => {
+            out.push('\n');
+            out.push_str(&wrap(&effort(summary), page, 0, 0));
+            out.push('\n');
+            out.push_str(&figures_text(summary, page));
+            out.push_str("\nGrounds\n");
+            out.push_str(&grounds_text(grounds, page));
+        }
+        _ => {
+            let summaries: Vec<Summary> = points.iter().map(|(s, _)| s.clone()).collect();
+            out.push_str("\nvalue (Monte Carlo error) at each point\n");
+            out.push_str(&sweep_text(&summaries, POINTS, page));
+            out.push_str(&shared_grounds(points, page));
+        }
+    }
+    out.push('\n');
+    out.push_str(&wrap(FOOT, page, 0, 0));
+    out
+}
+
+/// How the figures came about, in a sentence or two.
+fn effort(s: &Summary) -> String {
+    let chains = if s.chains == 1 {
+        "1 chain".into()
+    } else {
+        format!("{} chains", s.chains)
+    };
+    let goal = match s.goal {
+        GoalState::Met => "; the goal is met",
+        GoalState::Missed => "; the goal is MISSED",
+        GoalState::None => "",
+    };
+    let each = if s.chains == 1 { "" } else { " each" };
+    let advice = s.advice.as_ref().filter(|_| s.goal == GoalState::Missed);
+    let advice = advice.map_or(String::new(), |a| format!(": {a}"));
+    format!(
+        "{chains} of {} draws{each}, after a burn-in of {}{goal}{advice}.",
+        count(s.draws_per_chain),
+        count(s.burn_in)
+    )
+}
+
+/// The grounds of a sweep: those of the first point, and whether others stand differently.
+fn shared_grounds(points: &[(Summary, Grounds)], page: usize) -> String {
+    let standings = |g: &Grounds| g.claims.iter().map(|c| c.standing).collect::<Vec<_>>();
+    let Some((_, first)) = points.first() else {
+        return String::new();
+    };
+    let other = points
+        .iter()
+        .filter(|(_, g)| standings(g) != standings(first))
+        .count();
+    let heading = if other == 0 {
+        "\nGrounds (of the first point; the claims stand alike at all points)\n".to_string()
+    } else {
+        format!(
+            "\nGrounds (of the first point; at {} others a claim stands differently, see grounds.json)\n",
+            count(other as u64)
+        )
+    };
+    heading + &grounds_text(first, page)
+}
