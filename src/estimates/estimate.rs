@@ -269,7 +269,7 @@ pub(super) fn set_error(
 }
 
 /// The error of the standard deviation by the delta method on the squared distances from the mean.
-fn error_of_sd(scaled: Scaled, centre: f64, draws: usize) -> Option<f64> {
+pub(super) fn error_of_sd(scaled: Scaled, centre: f64, draws: usize) -> Option<f64> {
     let unit = scaled.length(1.0);
     let mut distances = scaled.values;
     for y in &mut distances {

@@ -27,6 +27,8 @@ mod quantile;
 mod r_hat;
 mod ranks;
 mod rare;
+#[cfg(test)]
+mod reference;
 mod sequence;
 mod stray;
 mod summary;
