@@ -1,0 +1,33 @@
+//! A law that is flat in the logarithm: no probability law, since its mass is not finite.
+
+use super::algebra::{Algebra, Value};
+use super::law::{Law, Parameter, Support};
+use super::term::Pen;
+
+pub(super) struct LogFlat;
+
+impl Law for LogFlat {
+    fn name(&self) -> &'static str {
+        "log_flat"
+    }
+    fn about(&self) -> &'static str {
+        "1 / x on (0, inf): flat in ln(x); improper"
+    }
+    fn parameters(&self) -> &'static [Parameter] {
+        &[]
+    }
+    fn support(&self) -> Support {
+        Support::POSITIVE
+    }
+    fn proper(&self) -> bool {
+        false
+    }
+    fn log_density(&self, a: &mut dyn Algebra, x: Value, _p: &[Value]) -> Value {
+        let pen = Pen::new(a);
+        let x = pen.term(x);
+        let inside = x.constant(0.0).less(x).and(x.less(f64::INFINITY));
+        inside
+            .select(-inside.select(x, 1.0).ln(), f64::NEG_INFINITY)
+            .value
+    }
+}
