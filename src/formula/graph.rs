@@ -5,7 +5,7 @@
 
 use super::shape::{Axis, Shape};
 use super::simplify;
-use crate::laws::{Algebra, Value};
+use crate::laws::{Algebra, Function, Value};
 use crate::maths::{self, Binary, Ternary, Unary};
 use std::collections::BTreeMap;
 use std::sync::Arc;
@@ -22,6 +22,7 @@ pub(super) enum Node {
     Unary(Unary, Value),
     Binary(Binary, Value, Value),
     Ternary(Ternary, Value, Value, Value),
+    Call(&'static Function, Value, Value, Value),
     Reduce(Reduction, Value),
     /// Elements of a vector by their numbers from 1; NaN where there is no such element.
     Gather(Value, Value),
@@ -40,7 +41,7 @@ impl Node {
                 [Some(a), None, None]
             }
             Node::Binary(_, a, b) | Node::Gather(a, b) => [Some(a), Some(b), None],
-            Node::Ternary(_, a, b, c) => [Some(a), Some(b), Some(c)],
+            Node::Ternary(_, a, b, c) | Node::Call(_, a, b, c) => [Some(a), Some(b), Some(c)],
         };
         list.into_iter().flatten()
     }
@@ -474,6 +475,15 @@ impl Algebra for Graph {
     }
     fn ternary(&mut self, op: Ternary, a: Value, b: Value, c: Value) -> Value {
         simplify::ternary(self, op, a, b, c)
+    }
+    fn call(&mut self, function: &'static Function, a: Value, b: Value, c: Value) -> Value {
+        let shape = self.common_shape(&[a, b, c]);
+        match self.fold(&[a, b, c], &shape, &|x| {
+            (function.evaluate)(x[0], x[1], x[2])
+        }) {
+            Some(v) => v,
+            None => self.add(Node::Call(function, a, b, c), shape),
+        }
     }
 }
 

@@ -215,6 +215,7 @@ impl LawTerm {
             Bound::Infinite => g.constant(infinite),
             Bound::At(value) => g.constant(value),
             Bound::Parameter(at) => self.parameters[at],
+            Bound::Length => g.constant(self.parameters.len() as f64),
         };
         let lower = end(support.lower, f64::NEG_INFINITY);
         let upper = end(support.upper, f64::INFINITY);

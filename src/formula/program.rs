@@ -125,6 +125,7 @@ impl Inner {
                 Node::Unary(op, a) => each(&|i| op.apply(at(a, i))),
                 Node::Binary(op, a, b) => each(&|i| op.apply(at(a, i), at(b, i))),
                 Node::Ternary(op, a, b, c) => each(&|i| op.apply(at(a, i), at(b, i), at(c, i))),
+                Node::Call(f, a, b, c) => each(&|i| (f.evaluate)(at(a, i), at(b, i), at(c, i))),
                 Node::Reduce(reduction, a) => vec![reduction.of(of(a))],
                 Node::Gather(a, index) => each(&|i| element(of(a), of(index)[i])),
                 Node::Element(a, i) => vec![of(a)[i]],

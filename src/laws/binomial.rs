@@ -10,19 +10,19 @@ use crate::random::{self, Stream};
 
 static QUANTILE: Function = Function {
     name: "quantile of binomial(trials, probability)",
-    evaluate: |arguments| {
-        let (q, p) = (arguments[0], &arguments[1..]);
+    evaluate: |q, first, second| {
+        let p = [first, second];
         let [mean, sd] = moments(p[0], p[1]);
-        search::quantile(&ByProbability, q, p, mean, sd)
+        search::quantile(&ByProbability, q, &p, mean, sd)
     },
 };
 
 static UPPER_QUANTILE: Function = Function {
     name: "upper quantile of binomial(trials, probability)",
-    evaluate: |arguments| {
-        let (s, p) = (arguments[0], &arguments[1..]);
+    evaluate: |s, first, second| {
+        let p = [first, second];
         let [mean, sd] = moments(p[0], p[1]);
-        search::upper_quantile(&ByProbability, s, p, mean, sd)
+        search::upper_quantile(&ByProbability, s, &p, mean, sd)
     },
 };
 
@@ -70,10 +70,10 @@ impl Written for ByProbability {
         p[1].ln_beta_i(x + 1.0, p[0] - x)
     }
     fn quantile<'p>(&self, q: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        q.call(&QUANTILE, &[q, p[0], p[1]])
+        q.call(&QUANTILE, p[0], p[1])
     }
     fn upper_quantile<'p>(&self, s: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        s.call(&UPPER_QUANTILE, &[s, p[0], p[1]])
+        s.call(&UPPER_QUANTILE, p[0], p[1])
     }
     fn draw(&self, stream: &mut Stream, p: &[f64]) -> f64 {
         random::binomial(stream, p[0], p[1])
@@ -82,19 +82,19 @@ impl Written for ByProbability {
 
 static ODDS_QUANTILE: Function = Function {
     name: "quantile of binomial(trials, log_odds)",
-    evaluate: |arguments| {
-        let (q, p) = (arguments[0], &arguments[1..]);
+    evaluate: |q, first, second| {
+        let p = [first, second];
         let [mean, sd] = moments(p[0], maths::logistic(p[1]));
-        search::quantile(&ByLogOdds, q, p, mean, sd)
+        search::quantile(&ByLogOdds, q, &p, mean, sd)
     },
 };
 
 static ODDS_UPPER_QUANTILE: Function = Function {
     name: "upper quantile of binomial(trials, log_odds)",
-    evaluate: |arguments| {
-        let (s, p) = (arguments[0], &arguments[1..]);
+    evaluate: |s, first, second| {
+        let p = [first, second];
         let [mean, sd] = moments(p[0], maths::logistic(p[1]));
-        search::upper_quantile(&ByLogOdds, s, p, mean, sd)
+        search::upper_quantile(&ByLogOdds, s, &p, mean, sd)
     },
 };
 
@@ -155,10 +155,10 @@ impl Written for ByLogOdds {
         )
     }
     fn quantile<'p>(&self, q: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        q.call(&ODDS_QUANTILE, &[q, p[0], p[1]])
+        q.call(&ODDS_QUANTILE, p[0], p[1])
     }
     fn upper_quantile<'p>(&self, s: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        s.call(&ODDS_UPPER_QUANTILE, &[s, p[0], p[1]])
+        s.call(&ODDS_UPPER_QUANTILE, p[0], p[1])
     }
     fn draw(&self, stream: &mut Stream, p: &[f64]) -> f64 {
         // The rarer of the two outcomes is counted, whose chance is the exact one.

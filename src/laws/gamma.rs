@@ -12,8 +12,7 @@ use crate::random::{self, Stream};
 /// The x with Q(shape, x) = s, from (s, shape).
 static UPPER_QUANTILE: Function = Function {
     name: "upper quantile of the standard gamma law",
-    evaluate: |arguments| {
-        let (s, shape) = (arguments[0], arguments[1]);
+    evaluate: |s, shape, _| {
         if s >= 0.5 {
             return maths::gamma_quantile(shape, 1.0 - s);
         }
@@ -23,7 +22,7 @@ static UPPER_QUANTILE: Function = Function {
 
 /// The x with Q(shape, x) = s, good for small s.
 pub(super) fn standard_upper_quantile<'p>(s: Term<'p>, shape: Term<'p>) -> Term<'p> {
-    s.call(&UPPER_QUANTILE, &[s, shape])
+    s.call(&UPPER_QUANTILE, shape, 0.0)
 }
 
 pub(super) struct ByRate;

@@ -36,19 +36,19 @@ tail!(ln_survival, ln_beta_i, ln_beta_ic);
 
 static QUANTILE: Function = Function {
     name: "quantile of negative_binomial(mean, shape)",
-    evaluate: |arguments| {
-        let (q, p) = (arguments[0], &arguments[1..]);
+    evaluate: |q, first, second| {
+        let p = [first, second];
         let [mean, sd] = [p[0], maths::sqrt(p[0] * (1.0 + p[0] / p[1]))];
-        search::quantile(&ByMean, q, p, mean, sd)
+        search::quantile(&ByMean, q, &p, mean, sd)
     },
 };
 
 static UPPER_QUANTILE: Function = Function {
     name: "upper quantile of negative_binomial(mean, shape)",
-    evaluate: |arguments| {
-        let (s, p) = (arguments[0], &arguments[1..]);
+    evaluate: |s, first, second| {
+        let p = [first, second];
         let [mean, sd] = [p[0], maths::sqrt(p[0] * (1.0 + p[0] / p[1]))];
-        search::upper_quantile(&ByMean, s, p, mean, sd)
+        search::upper_quantile(&ByMean, s, &p, mean, sd)
     },
 };
 
@@ -87,10 +87,10 @@ impl Written for ByMean {
         ln_survival(x, p[1], odds(p))
     }
     fn quantile<'p>(&self, q: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        q.call(&QUANTILE, &[q, p[0], p[1]])
+        q.call(&QUANTILE, p[0], p[1])
     }
     fn upper_quantile<'p>(&self, s: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        s.call(&UPPER_QUANTILE, &[s, p[0], p[1]])
+        s.call(&UPPER_QUANTILE, p[0], p[1])
     }
     fn draw(&self, stream: &mut Stream, p: &[f64]) -> f64 {
         random::negative_binomial(stream, p[1], p[0] / p[1])
@@ -99,23 +99,23 @@ impl Written for ByMean {
 
 static SUCCESSES_QUANTILE: Function = Function {
     name: "quantile of negative_binomial(successes, probability)",
-    evaluate: |arguments| {
-        let (q, p) = (arguments[0], &arguments[1..]);
+    evaluate: |q, first, second| {
+        let p = [first, second];
         let [mean, sd] = moments(p);
-        search::quantile(&BySuccesses, q, p, mean, sd)
+        search::quantile(&BySuccesses, q, &p, mean, sd)
     },
 };
 
 static SUCCESSES_UPPER_QUANTILE: Function = Function {
     name: "upper quantile of negative_binomial(successes, probability)",
-    evaluate: |arguments| {
-        let (s, p) = (arguments[0], &arguments[1..]);
+    evaluate: |s, first, second| {
+        let p = [first, second];
         let [mean, sd] = moments(p);
-        search::upper_quantile(&BySuccesses, s, p, mean, sd)
+        search::upper_quantile(&BySuccesses, s, &p, mean, sd)
     },
 };
 
-fn moments(p: &[f64]) -> [f64; 2] {
+fn moments(p: [f64; 2]) -> [f64; 2] {
     let mean = p[0] * (1.0 - p[1]) / p[1];
     [mean, maths::sqrt(mean / p[1])]
 }
@@ -155,10 +155,10 @@ impl Written for BySuccesses {
         ln_survival(x, p[0], [1.0 - p[1], p[1]])
     }
     fn quantile<'p>(&self, q: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        q.call(&SUCCESSES_QUANTILE, &[q, p[0], p[1]])
+        q.call(&SUCCESSES_QUANTILE, p[0], p[1])
     }
     fn upper_quantile<'p>(&self, s: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        s.call(&SUCCESSES_UPPER_QUANTILE, &[s, p[0], p[1]])
+        s.call(&SUCCESSES_UPPER_QUANTILE, p[0], p[1])
     }
     fn draw(&self, stream: &mut Stream, p: &[f64]) -> f64 {
         random::negative_binomial(stream, p[0], (1.0 - p[1]) / p[1])

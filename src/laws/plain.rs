@@ -46,9 +46,9 @@ impl Algebra for Plain {
         self.constant(op.apply(self.number(a), self.number(b), self.number(c)))
     }
 
-    fn call(&mut self, function: &'static Function, arguments: &[Value]) -> Value {
-        let numbers: Vec<f64> = arguments.iter().map(|&a| self.number(a)).collect();
-        self.constant((function.evaluate)(&numbers))
+    fn call(&mut self, function: &'static Function, a: Value, b: Value, c: Value) -> Value {
+        let value = (function.evaluate)(self.number(a), self.number(b), self.number(c));
+        self.constant(value)
     }
 }
 

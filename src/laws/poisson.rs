@@ -10,19 +10,19 @@ use crate::random::{self, Stream};
 
 static QUANTILE: Function = Function {
     name: "quantile of poisson(mean)",
-    evaluate: |arguments| {
-        let (q, p) = (arguments[0], &arguments[1..]);
-        let [mean, sd] = [p[0], maths::sqrt(p[0])];
-        search::quantile(&Poisson, q, p, mean, sd)
+    evaluate: |q, mean, _| {
+        let p = [mean];
+        let sd = maths::sqrt(mean);
+        search::quantile(&Poisson, q, &p, mean, sd)
     },
 };
 
 static UPPER_QUANTILE: Function = Function {
     name: "upper quantile of poisson(mean)",
-    evaluate: |arguments| {
-        let (s, p) = (arguments[0], &arguments[1..]);
-        let [mean, sd] = [p[0], maths::sqrt(p[0])];
-        search::upper_quantile(&Poisson, s, p, mean, sd)
+    evaluate: |s, mean, _| {
+        let p = [mean];
+        let sd = maths::sqrt(mean);
+        search::upper_quantile(&Poisson, s, &p, mean, sd)
     },
 };
 
@@ -54,10 +54,10 @@ impl Written for Poisson {
         (x + 1.0).ln_gamma_p(p[0])
     }
     fn quantile<'p>(&self, q: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        q.call(&QUANTILE, &[q, p[0]])
+        q.call(&QUANTILE, p[0], 0.0)
     }
     fn upper_quantile<'p>(&self, s: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        s.call(&UPPER_QUANTILE, &[s, p[0]])
+        s.call(&UPPER_QUANTILE, p[0], 0.0)
     }
     fn draw(&self, stream: &mut Stream, p: &[f64]) -> f64 {
         random::poisson(stream, p[0])

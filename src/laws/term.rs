@@ -79,9 +79,15 @@ impl<'p> Term<'p> {
         self.made(&mut |a| a.ternary(op, self.value, second.value, third.value))
     }
 
-    pub fn call(self, function: &'static Function, arguments: &[Term<'p>]) -> Self {
-        let values: Vec<Value> = arguments.iter().map(|term| term.value).collect();
-        self.made(&mut |a| a.call(function, &values))
+    /// The function at self and two more.
+    pub fn call(
+        self,
+        function: &'static Function,
+        second: impl Operand<'p>,
+        third: impl Operand<'p>,
+    ) -> Self {
+        let (second, third) = (second.on(self), third.on(self));
+        self.made(&mut |a| a.call(function, self.value, second.value, third.value))
     }
 
     unary!(

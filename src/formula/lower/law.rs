@@ -184,7 +184,7 @@ impl Lowering<'_> {
         let Some(known) = self.graph.known_values(term.value) else {
             return Some(());
         };
-        let wrong = known.iter().enumerate().find(|(_, x)| !holds(domain, **x));
+        let wrong = known.iter().enumerate().find(|(_, x)| !domain.holds(**x));
         if let Some((row, x)) = wrong {
             let whose = match &term.shape {
                 Shape::Number => format!("it is {x}"),
@@ -196,7 +196,7 @@ impl Lowering<'_> {
                     format!(
                         "`{name}` of `{}` must be {}; {whose}",
                         law.name(),
-                        words(domain)
+                        domain.words()
                     ),
                 )
                 .label("outside its domain"),
@@ -379,25 +379,4 @@ fn usage(law: &dyn Law) -> String {
         .map(|p| format!("{} = …", p.name))
         .collect();
     format!("{}({})", law.name(), parameters.join(", "))
-}
-
-fn holds(domain: Domain, x: f64) -> bool {
-    match domain {
-        Domain::Real => x.is_finite(),
-        Domain::Positive => x > 0.0 && x.is_finite(),
-        Domain::NonNegative => x >= 0.0 && x.is_finite(),
-        Domain::Unit | Domain::Probabilities => (0.0..=1.0).contains(&x),
-        Domain::Count => x >= 0.0 && x.floor() == x && x.is_finite(),
-    }
-}
-
-fn words(domain: Domain) -> &'static str {
-    match domain {
-        Domain::Real => "a finite number",
-        Domain::Positive => "positive",
-        Domain::NonNegative => "0 or positive",
-        Domain::Unit => "between 0 and 1",
-        Domain::Count => "a whole number, 0 or more",
-        Domain::Probabilities => "probabilities",
-    }
 }
