@@ -51,13 +51,17 @@ impl Fault {
     }
 }
 
-/// The faults found so far; reading goes on after each, so that all are shown in one go.
+/// Past so many faults nobody reads on, and a broken file could have millions.
+const MOST: usize = 1000;
+
+/// The faults found so far; reading goes on after each, so that all are shown in one go. The same fault is
+/// kept once.
 #[derive(Debug, Default)]
 pub struct Faults(pub Vec<Fault>);
 
 impl Faults {
     pub fn push(&mut self, fault: Fault) {
-        if !self.0.contains(&fault) {
+        if self.0.len() < MOST && !self.0.contains(&fault) {
             self.0.push(fault);
         }
     }

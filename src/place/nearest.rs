@@ -1,9 +1,15 @@
 //! The nearest known name to one that is not known.
 
+/// Names longer than this are not compared: the work grows with the product of the lengths.
+const LONGEST: usize = 100;
+
 /// The candidate most like `name`, if one is close enough to be worth a "did you mean".
 pub fn nearest<'a>(name: &str, candidates: impl IntoIterator<Item = &'a str>) -> Option<&'a str> {
     let mut best: Option<(usize, &str)> = None;
     for candidate in candidates {
+        if name.len() > LONGEST || candidate.len() > LONGEST {
+            continue;
+        }
         let distance = strsim::damerau_levenshtein(&name.to_lowercase(), &candidate.to_lowercase());
         let allowed = 1 + name.chars().count().max(candidate.chars().count()) / 4;
         if distance <= allowed && best.is_none_or(|(d, _)| distance < d) {
@@ -11,4 +17,19 @@ pub fn nearest<'a>(name: &str, candidates: impl IntoIterator<Item = &'a str>) ->
         }
     }
     best.map(|(_, candidate)| candidate)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn near_enough_or_nothing() {
+        assert_eq!(nearest("scael", ["scale", "adapt"]), Some("scale"));
+        assert_eq!(nearest("SCALE", ["scale", "adapt"]), Some("scale"));
+        assert_eq!(nearest("width", ["scale", "adapt"]), None);
+        assert_eq!(nearest("", []), None);
+        let long = "a".repeat(1_000_000);
+        assert_eq!(nearest(&long, [long.as_str()]), None);
+    }
 }

@@ -1,79 +1,145 @@
 //! What each key and digest covers.
+//!
+//! | name | covers |
+//! |---|---|
+//! | stream key | model, data, sampler, start, burn-in, `every`, block rule, swept values (with shared streams: the study without them), root, chain index |
+//! | chain key | stream key, swept values, `NUMERICS.draws`; with a self-chosen burn-in also the number of chains and the estimands |
+//! | plan digest | all chain keys, draws, goal, estimands, predictions, block lengths, `keep`, accepted grounds, title, question, `NUMERICS.estimates` |
+//!
+//! A self-chosen burn-in ends when R-hat of the recorded quantities over all chains is small, so the draws
+//! after it do depend on how many chains there are and on what is recorded; without that, two chains of one
+//! key could differ.
 
-use crate::canon::Json;
+use crate::canon::{Json, hex};
 use crate::plan::types::*;
 use sha2::{Digest, Sha256};
 
-/// The rule of [`crate::plan::block_length`] and [`crate::plan::reviews`], as far as it can move a digit.
+/// Version of the rule of [`crate::plan::block_length`].
 const BLOCK_RULE: u64 = 1;
 
 impl Plan {
     /// Seeds a chain of a point.
     pub fn stream_key(&self, point: usize, chain: u64) -> [u8; 32] {
-        let point = &self.points[point];
-        let content = match &self.shared {
-            Some(shared) => Json::object([("shared", shared.clone())]),
-            None => Json::object([("content", self.content(point)), ("values", values(point))]),
-        };
-        let covered = Json::object([
-            ("content", content),
-            ("root", Json::text(&*self.root)),
-            ("chain", Json::Count(chain)),
-        ]);
-        tagged("odograph stream key", &covered)
+        self.stream_keys(point, chain..chain + 1)[0]
     }
 
     /// Heads the trail of a chain of a point; two chains with the same key have the same draws.
     pub fn chain_key(&self, point: usize, chain: u64) -> [u8; 32] {
-        let key = self.stream_key(point, chain);
-        let point = &self.points[point];
-        let mut members = vec![
-            ("stream_key", Json::text(crate::canon::hex(&key))),
-            ("values", values(point)),
-            ("numerics_draws", Json::Count(NUMERICS.draws)),
-        ];
-        if let BurnIn::Chosen { .. } = point.ensemble.burn_in {
-            // When burn-in ends depends on what all chains recorded.
-            members.push(("chains", Json::Count(point.ensemble.chains)));
-            members.push(("estimands", estimands(point)));
-        }
-        tagged("odograph chain key", &Json::object(members))
+        self.chain_keys(point, chain..chain + 1)[0]
     }
 
     /// Names a point by its content: what all its chain keys share.
     pub fn point_key(&self, point: usize) -> [u8; 32] {
-        self.chain_key(point, 0)
+        let content = self.content(point);
+        let values = values(&self.points[point]);
+        let covered = Json::object([
+            ("content", content),
+            ("values", values),
+            ("root", Json::text(&*self.root)),
+            ("numerics_draws", Json::Count(NUMERICS.draws)),
+        ]);
+        tagged("odograph point key", &covered)
     }
 
     /// Names the folder.
     pub fn digest(&self) -> [u8; 32] {
-        tagged("odograph plan", &self.canonical())
+        let points = (0..self.points.len()).map(|at| {
+            let point = &self.points[at];
+            let keys = self.chain_keys(at, 0..point.ensemble.chains);
+            Json::object([
+                (
+                    "chains",
+                    Json::array(keys.iter().map(|key| Json::text(hex(key)))),
+                ),
+                ("draws", Json::Count(point.ensemble.draws)),
+                ("goal", point.goal_json()),
+                ("estimands", point.estimands_json()),
+                ("predict", point.predict_json()),
+                ("block", Json::Count(point.block)),
+                ("units", point.units_json()),
+            ])
+        });
+        let covered = Json::object([
+            ("title", Json::text(&*self.title)),
+            ("question", Json::text(&*self.question)),
+            ("keep", self.keep_json()),
+            ("accepted", self.accepted_json()),
+            ("numerics_estimates", Json::Count(NUMERICS.estimates)),
+            ("points", Json::array(points)),
+        ]);
+        tagged("odograph plan digest", &covered)
     }
 
-    /// The plan in canonical form (`plan.json`).
-    pub fn canonical(&self) -> Json {
-        Json::Null
+    fn stream_keys(&self, point: usize, chains: std::ops::Range<u64>) -> Vec<[u8; 32]> {
+        // The content may be large: hashed once for all chains.
+        let content = tagged("odograph stream content", &self.content(point));
+        let values = match self.shared {
+            Some(_) => Json::Null,
+            None => values(&self.points[point]),
+        };
+        let key = |chain| {
+            let covered = Json::object([
+                ("content", Json::text(hex(&content))),
+                ("values", values.clone()),
+                ("root", Json::text(&*self.root)),
+                ("chain", Json::Count(chain)),
+            ]);
+            tagged("odograph stream key", &covered)
+        };
+        chains.map(key).collect()
     }
 
-    fn content(&self, point: &Point) -> Json {
+    fn chain_keys(&self, point: usize, chains: std::ops::Range<u64>) -> Vec<[u8; 32]> {
+        let streams = self.stream_keys(point, chains);
+        let point = &self.points[point];
+        let together = match point.ensemble.burn_in {
+            BurnIn::Fixed(_) => Json::Null,
+            BurnIn::Chosen { .. } => Json::object([
+                ("chains", Json::Count(point.ensemble.chains)),
+                ("estimands", point.recorded_json()),
+            ]),
+        };
+        let key = |stream: &[u8; 32]| {
+            let covered = Json::object([
+                ("stream", Json::text(hex(stream))),
+                ("values", values(point)),
+                ("together", together.clone()),
+                ("numerics_draws", Json::Count(NUMERICS.draws)),
+            ]);
+            tagged("odograph chain key", &covered)
+        };
+        streams.iter().map(key).collect()
+    }
+
+    /// What a point's chains follow, before any value is swept into the key.
+    fn content(&self, point: usize) -> Json {
+        if let Some(shared) = &self.shared {
+            return shared.clone();
+        }
+        let point = &self.points[point];
         Json::object([
             ("model", point.model.canonical()),
+            ("resolved", point.shared_parts(true, true, true)),
+        ])
+    }
+}
+
+impl Point {
+    /// What a stream key covers beside the model; with shared streams, without what is swept.
+    pub(crate) fn shared_parts(&self, data: bool, burn_in: bool, every: bool) -> Json {
+        let given = |given: bool, json: Json| if given { json } else { Json::Null };
+        Json::object([
+            ("data", given(data, self.data_json())),
+            ("burn_in", given(burn_in, self.burn_in_json())),
+            ("every", given(every, Json::Count(self.ensemble.every))),
             ("block_rule", Json::Count(BLOCK_RULE)),
         ])
     }
 }
 
 fn values(point: &Point) -> Json {
-    Json::array(
-        point
-            .values
-            .iter()
-            .map(|(path, value)| Json::array([Json::text(&**path), value.clone()])),
-    )
-}
-
-fn estimands(_point: &Point) -> Json {
-    Json::Null
+    let pair = |(path, value): &(String, Json)| Json::array([Json::text(&**path), value.clone()]);
+    Json::array(point.values.iter().map(pair))
 }
 
 /// SHA-256 over a tag and the canonical text, each with its length before it.
@@ -85,3 +151,6 @@ fn tagged(tag: &str, json: &Json) -> [u8; 32] {
     }
     hash.finalize().into()
 }
+
+#[cfg(test)]
+mod tests;

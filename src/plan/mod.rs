@@ -2,6 +2,7 @@
 
 mod block;
 mod identity;
+mod json;
 mod types;
 
 pub use block::{block_length, reviews};

@@ -26,13 +26,12 @@ pub struct Plan {
     pub question: String,
     /// Root of all streams; `7` and `"7"` are the same.
     pub root: String,
-    /// In order of name.
-    pub data: Vec<Data>,
     /// In the order of the file; empty without a sweep.
     pub axes: Vec<SweepAxis>,
     pub combine: Combine,
     pub streams: Streams,
-    /// With shared streams: what the stream keys of all points cover in place of each point's own content.
+    /// With shared streams: what the stream keys of all points cover in place of each point's own model,
+    /// which is the study as written, formulas as printed from their tree, without the swept values.
     pub shared: Option<Json>,
     /// At least one.
     pub points: Vec<Point>,
@@ -47,10 +46,13 @@ pub struct Data {
     pub name: String,
     /// Lower-case hexadecimal, of the file's bytes.
     pub sha256: String,
-    /// How its cells were read (names, labels, missing, matrices, units), in canonical form.
+    /// How its cells were read (names, columns, labels, missing, matrices), in canonical form.
     pub read: Json,
+    /// Units of its columns, in order of name.
+    pub units: Vec<(String, String)>,
+    /// Rows kept.
     pub rows: u64,
-    /// Empty numeric cells; the number is always reported.
+    /// Empty cells found; the number is always reported.
     pub missing: u64,
     /// Rows left out for a missing cell.
     pub dropped: u64,
@@ -98,13 +100,15 @@ pub struct Accepted {
 pub struct Point {
     /// What it varies, in the order of the axes.
     pub values: Vec<(String, Json)>,
+    /// In order of name.
+    pub data: Vec<Data>,
     pub model: Arc<dyn Model>,
     pub ensemble: Ensemble,
     /// `None`: run the draws asked for and stop.
     pub goal: Option<Goal>,
     pub estimands: Vec<Estimand>,
-    /// Canonical form of `[predict]`: a formula for each name.
-    pub predict: Json,
+    /// `[predict]`: a formula, as printed from its parsed tree, for each name, in order of name.
+    pub predict: Vec<(String, String)>,
     /// Draws in a block.
     pub block: u64,
 }

@@ -12,13 +12,15 @@ use toml::de::{DeArray, DeInteger, DeTable, DeValue};
 /// Reads a whole TOML file. What can be read in spite of faults is given, so that reading can go on.
 pub fn parse(source: &Arc<Source>, faults: &mut Faults) -> Section {
     let (table, errors) = DeTable::parse_recoverable(&source.text);
+    let damaged = !errors.is_empty();
     for error in errors {
         let place = place(source, error.span().unwrap_or(0..0));
         faults
             .push(Fault::at(place, format!("this is not TOML: {}", error.message())).label("here"));
     }
     let whole = place(source, 0..0);
-    let tree = tree(source, "", table.get_ref(), false, faults);
+    let reader = Reader { source, damaged };
+    let tree = reader.tree("", table.get_ref(), false, faults);
     Section::new(String::new(), whole, Arc::new(tree), false)
 }
 
@@ -29,22 +31,59 @@ fn place(source: &Arc<Source>, span: Range<usize>) -> Place {
     }
 }
 
-fn tree(
-    source: &Arc<Source>,
-    path: &str,
-    table: &DeTable<'_>,
-    inline: bool,
-    faults: &mut Faults,
-) -> Tree {
-    let mut entries: Vec<Entry> = Vec::with_capacity(table.len());
-    for (key, value) in table.iter() {
-        let key = text(source, key.get_ref(), key.span());
-        let path = extend(path, &key.text);
-        let value = convert(source, path, value, faults);
-        entries.push(Entry { key, value });
+struct Reader<'a> {
+    source: &'a Arc<Source>,
+    damaged: bool,
+}
+
+impl Reader<'_> {
+    fn tree(&self, path: &str, table: &DeTable<'_>, inline: bool, faults: &mut Faults) -> Tree {
+        let mut entries: Vec<Entry> = Vec::with_capacity(table.len());
+        for (key, value) in table.iter() {
+            let key = text(self.source, key.get_ref(), key.span());
+            let path = extend(path, &key.text);
+            let value = self.value(path, value, faults);
+            entries.push(Entry { key, value });
+        }
+        entries.sort_by_key(|entry| entry.key.place.span.start);
+        Tree {
+            entries,
+            inline,
+            damaged: self.damaged,
+        }
     }
-    entries.sort_by_key(|entry| entry.key.place.span.start);
-    Tree { entries, inline }
+
+    fn value(&self, path: String, value: &Spanned<DeValue<'_>>, faults: &mut Faults) -> Value {
+        let span = value.span();
+        let here = place(self.source, span.clone());
+        let content = match value.get_ref() {
+            DeValue::String(decoded) => Content::Text(text(self.source, decoded, span)),
+            DeValue::Integer(integer) => whole(integer, &path, &here, faults),
+            DeValue::Float(float) => real(float.as_str(), &path, &here, faults),
+            DeValue::Boolean(value) => Content::Boolean(*value),
+            DeValue::Datetime(_) => Content::Date,
+            DeValue::Array(array) => Content::List(self.list(&path, array, faults)),
+            DeValue::Table(table) => {
+                let written = self.source.text.get(span.start..).unwrap_or("");
+                let inline = written.starts_with('{');
+                Content::Tree(Arc::new(self.tree(&path, table, inline, faults)))
+            }
+        };
+        Value {
+            path,
+            place: here,
+            content,
+        }
+    }
+
+    fn list(&self, path: &str, array: &DeArray<'_>, faults: &mut Faults) -> Vec<Value> {
+        let numbered = |i: usize| format!("{path}[{}]", i + 1);
+        array
+            .iter()
+            .enumerate()
+            .map(|(i, item)| self.value(numbered(i), item, faults))
+            .collect()
+    }
 }
 
 /// `path.key`, with the key in quotes where it would not do without.
@@ -75,42 +114,6 @@ fn text(source: &Arc<Source>, decoded: &str, span: Range<usize>) -> Text {
         place: place(source, span),
         offsets,
     }
-}
-
-fn convert(
-    source: &Arc<Source>,
-    path: String,
-    value: &Spanned<DeValue<'_>>,
-    faults: &mut Faults,
-) -> Value {
-    let span = value.span();
-    let here = place(source, span.clone());
-    let content = match value.get_ref() {
-        DeValue::String(decoded) => Content::Text(text(source, decoded, span)),
-        DeValue::Integer(integer) => whole(integer, &path, &here, faults),
-        DeValue::Float(float) => real(float.as_str(), &path, &here, faults),
-        DeValue::Boolean(value) => Content::Boolean(*value),
-        DeValue::Datetime(_) => Content::Date,
-        DeValue::Array(array) => Content::List(list(source, &path, array, faults)),
-        DeValue::Table(table) => {
-            let inline = source.text[span.start..].starts_with('{');
-            Content::Tree(Arc::new(tree(source, &path, table, inline, faults)))
-        }
-    };
-    Value {
-        path,
-        place: here,
-        content,
-    }
-}
-
-fn list(source: &Arc<Source>, path: &str, array: &DeArray<'_>, faults: &mut Faults) -> Vec<Value> {
-    let numbered = |i: usize| format!("{path}[{}]", i + 1);
-    array
-        .iter()
-        .enumerate()
-        .map(|(i, item)| convert(source, numbered(i), item, faults))
-        .collect()
 }
 
 fn whole(integer: &DeInteger<'_>, path: &str, here: &Place, faults: &mut Faults) -> Content {

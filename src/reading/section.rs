@@ -31,6 +31,20 @@ impl Section {
         }
     }
 
+    /// True if the file has faults of syntax: keys may be missing which were written.
+    pub fn damaged(&self) -> bool {
+        self.tree.damaged
+    }
+
+    /// The same section with another table beneath (swept values in place), asked for nothing yet.
+    pub fn with(&self, tree: Arc<Tree>) -> Section {
+        Section {
+            tree,
+            asked: RefCell::default(),
+            ..self.clone()
+        }
+    }
+
     /// Dotted path; empty for the whole file.
     pub fn path(&self) -> &str {
         &self.path
@@ -82,14 +96,13 @@ impl Section {
     /// The value of a key that must be there; `meaning` says what it is: "the law of the unknown".
     pub fn need(&self, key: &str, meaning: &str, faults: &mut Faults) -> Option<Value> {
         let found = self.value(key);
-        if found.is_none() {
+        if found.is_none() && !self.damaged() {
             let fault = Fault::at(
                 self.place.clone(),
                 format!("{} needs `{key}`", self.called()),
             )
             .label(format!("without `{key}`"))
             .help(format!("add `{key}`: {meaning}"));
-            // A misspelt key is most likely this one; `finish` will say so at its place.
             faults.push(fault);
         }
         found

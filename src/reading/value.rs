@@ -34,6 +34,8 @@ pub struct Tree {
     pub entries: Vec<Entry>,
     /// Written between braces rather than under a header.
     pub inline: bool,
+    /// Its file has faults of syntax, so that keys may be missing which were written.
+    pub damaged: bool,
 }
 
 #[derive(Debug, Clone, PartialEq)]
@@ -141,19 +143,23 @@ impl Value {
     /// A whole number in a range. `2000.0` and `2e3` are whole numbers as well.
     pub fn count(&self, range: RangeInclusive<u64>, faults: &mut Faults) -> Option<u64> {
         const EXACT: f64 = 9007199254740992.0;
+        let refused = |wanted: &str, given: String, faults: &mut Faults| {
+            faults.push(
+                Fault::at(
+                    self.place.clone(),
+                    format!(
+                        "`{}` must be a whole number{wanted}, not {given}",
+                        self.path
+                    ),
+                )
+                .label("not such a number"),
+            );
+            None
+        };
         let whole = match self.content {
             Content::Integer(n) => i128::from(n),
             Content::Number(x) if x.floor() == x && x.abs() <= EXACT => x as i128,
-            Content::Number(_) => {
-                faults.push(
-                    Fault::at(
-                        self.place.clone(),
-                        format!("`{}` must be a whole number", self.path),
-                    )
-                    .label("not a whole number"),
-                );
-                return None;
-            }
+            Content::Number(x) => return refused("", x.to_string(), faults),
             _ => {
                 self.refuse("a whole number", faults);
                 return None;
@@ -163,19 +169,12 @@ impl Value {
         if i128::from(low) <= whole && whole <= i128::from(high) {
             return Some(whole as u64);
         }
-        let wanted = if high >= EXACT as u64 {
-            format!("{low} or more")
+        let wanted = if high >= EXACT as u64 - 1 && whole < i128::from(low) {
+            format!(", {low} or more")
         } else {
-            format!("from {low} to {high}")
+            format!(" from {low} to {high}")
         };
-        faults.push(
-            Fault::at(
-                self.place.clone(),
-                format!("`{}` must be a whole number, {wanted}", self.path),
-            )
-            .label(format!("must be {wanted}")),
-        );
-        None
+        refused(&wanted, whole.to_string(), faults)
     }
 
     /// `true` or `false`.
@@ -226,7 +225,7 @@ impl Value {
     /// One of these words.
     pub fn word<'w>(&self, words: &[&'w str], faults: &mut Faults) -> Option<&'w str> {
         let Content::Text(text) = &self.content else {
-            self.refuse(&format!("one of {}", listed(words, "or")), faults);
+            self.refuse(&listed(words, "or"), faults);
             return None;
         };
         if let Some(word) = words.iter().find(|word| **word == text.text) {
@@ -237,7 +236,7 @@ impl Value {
             format!("`{}` cannot be `{}`", self.path, text.text),
         )
         .label("not known here");
-        let choice = format!("one of {}", listed(words, "or"));
+        let choice = listed(words, "or");
         fault = match nearest(&text.text, words.iter().copied()) {
             Some(near) => fault.help(format!("did you mean `{near}`? It can be {choice}")),
             None => fault.help(format!("it can be {choice}")),

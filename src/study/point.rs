@@ -1,0 +1,208 @@
+//! One point of a study, swept values in place: every section resolved.
+
+use crate::canon::Json;
+use crate::course::{Family, Request, StartSpec};
+use crate::place::Faults;
+use crate::plan::{Data, Point, block_length};
+use crate::reading::{self, Section, Table, Tree};
+use crate::study::estimand::{self, identifier, printed};
+use crate::study::{ensemble, goal};
+use std::collections::BTreeMap;
+use std::path::Path;
+use std::sync::Arc;
+
+/// What the points of a study have in common while they are resolved.
+pub(super) struct Surroundings<'a> {
+    folder: &'a Path,
+    registry: &'a [&'a dyn Family],
+    /// Data files read so far: a sweep rarely touches them.
+    read: Vec<(String, Arc<Tree>, Option<(Data, Arc<Table>)>)>,
+}
+
+impl<'a> Surroundings<'a> {
+    pub fn new(folder: &'a Path, registry: &'a [&'a dyn Family]) -> Surroundings<'a> {
+        Surroundings {
+            folder,
+            registry,
+            read: Vec::new(),
+        }
+    }
+
+    /// The table of a section `[data.NAME]`, from its file or from an earlier point with the same section.
+    fn table(
+        &mut self,
+        name: &str,
+        section: &Section,
+        faults: &mut Faults,
+    ) -> Option<(Data, Arc<Table>)> {
+        let tree = section.tree();
+        let known = self.read.iter().find(|(n, t, _)| n == name && t == tree);
+        if let Some((_, _, Some(found))) = known {
+            return Some(found.clone());
+        }
+        let table = reading::data(name, section, self.folder, faults);
+        let found = table.map(|table| (described(&table, section), Arc::new(table)));
+        self.read
+            .push((name.to_string(), tree.clone(), found.clone()));
+        found
+    }
+}
+
+/// Resolves one point. `None` only with a fault recorded.
+pub(super) fn resolve_point(
+    root: &Section,
+    values: Vec<(String, Json)>,
+    surroundings: &mut Surroundings<'_>,
+    faults: &mut Faults,
+) -> Option<Point> {
+    let (data, tables) = tables(root, surroundings, faults);
+    let (ensemble, start) = ensemble::read(root, surroundings.folder, faults);
+    let (specs, mut estimands): (Vec<_>, Vec<_>) = estimand::read(root, faults).into_iter().unzip();
+    let implied = estimands.iter().any(|e| e.goal.is_some());
+    let goal = goal::read(root, &ensemble, start.is_some(), implied, faults);
+    let predict = root.section("predict", faults);
+    let sampler = root.section("sampler", faults);
+    let model = root
+        .need(
+            "model",
+            "the table that says what is sampled, with its `family`",
+            faults,
+        )
+        .and_then(|value| value.section(faults))?;
+    let names: Vec<&str> = surroundings.registry.iter().map(|f| f.name()).collect();
+    let family = model
+        .need("family", "the kind of model", faults)
+        .and_then(|value| value.word(&names, faults));
+    let family = surroundings
+        .registry
+        .iter()
+        .find(|f| Some(f.name()) == family)?;
+    if root.damaged() || !tables.complete {
+        // What is missing there would be complained of everywhere.
+        return None;
+    }
+    // The family looks for its own faults whatever the ensemble's are.
+    let sound = start.is_some();
+    let start = start.unwrap_or(StartSpec::Spread);
+    let request = Request {
+        model: &model,
+        sampler: sampler.as_ref(),
+        predict: predict.as_ref(),
+        estimands: &specs,
+        start: &start,
+        tables: &tables.by_name,
+        every: ensemble.every,
+    };
+    let resolved = family.resolve(&request, faults).filter(|_| sound)?;
+    if specs.is_empty() {
+        estimands = estimand::of_quantities(resolved.quantities());
+    }
+    let block = block_length(
+        resolved.cost(),
+        resolved.quantities().len(),
+        resolved.state_size(),
+        ensemble.draws,
+    );
+    Some(Point {
+        values,
+        data,
+        model: resolved,
+        ensemble,
+        goal,
+        estimands,
+        predict: predict
+            .map(|section| formulas(&section))
+            .unwrap_or_default(),
+        block,
+    })
+}
+
+struct Tables {
+    by_name: BTreeMap<String, Arc<Table>>,
+    /// No table is at fault.
+    complete: bool,
+}
+
+fn tables(
+    root: &Section,
+    surroundings: &mut Surroundings<'_>,
+    faults: &mut Faults,
+) -> (Vec<Data>, Tables) {
+    let mut data = Vec::new();
+    let mut tables = Tables {
+        by_name: BTreeMap::new(),
+        complete: true,
+    };
+    let Some(section) = root.section("data", faults) else {
+        return (data, tables);
+    };
+    for (name, value) in section.entries() {
+        let read = identifier(name, "data table", faults).and_then(|name| {
+            let section = value.section(faults)?;
+            surroundings.table(&name.text, &section, faults)
+        });
+        match read {
+            Some((described, table)) => {
+                tables.by_name.insert(table.name.clone(), table);
+                data.push(described);
+            }
+            None => tables.complete = false,
+        }
+    }
+    (data, tables)
+}
+
+/// `[predict]`: each formula as printed from its tree, in order of name.
+fn formulas(section: &Section) -> Vec<(String, String)> {
+    let entries = section.tree().entries.iter();
+    let mut formulas: Vec<(String, String)> = entries
+        .filter_map(|entry| match &entry.value.content {
+            reading::Content::Text(text) => Some((entry.key.text.clone(), printed(text))),
+            _ => None,
+        })
+        .collect();
+    formulas.sort();
+    formulas
+}
+
+/// A table as the plan names it.
+fn described(table: &Table, section: &Section) -> Data {
+    let texts = |key: &str| {
+        let mut list: Vec<String> = section
+            .texts(key, &mut Faults::default())
+            .unwrap_or_default()
+            .into_iter()
+            .map(|text| text.text)
+            .collect();
+        list.sort();
+        Json::array(list.into_iter().map(Json::text))
+    };
+    let names = table.names.as_ref().map(|names| Json::text(&*names.column));
+    let missing = section.word(
+        "missing",
+        &["fault", "drop rows", "unknown"],
+        &mut Faults::default(),
+    );
+    let matrices = table.matrices.iter().map(|matrix| {
+        let columns = table.matrix_columns(matrix).into_iter().map(Json::text);
+        (matrix.name.clone(), Json::array(columns))
+    });
+    let unit = |column: &reading::Column| Some((column.name.clone(), column.unit.clone()?));
+    let mut units: Vec<(String, String)> = table.columns.iter().filter_map(unit).collect();
+    units.sort();
+    Data {
+        name: table.name.clone(),
+        sha256: table.sha256.clone(),
+        read: Json::object([
+            ("names", names.unwrap_or(Json::Null)),
+            ("columns", texts("columns")),
+            ("labels", texts("labels")),
+            ("missing", Json::text(missing.unwrap_or("fault"))),
+            ("matrices", Json::object(matrices)),
+        ]),
+        units,
+        rows: table.rows as u64,
+        missing: table.missing as u64,
+        dropped: table.dropped.len() as u64,
+    }
+}

@@ -1,0 +1,131 @@
+//! From a study file to a plan, or to every fault in it.
+
+use crate::course::Family;
+use crate::place::{Fault, Faults, Place, Source};
+use crate::plan::{Plan, Point, Streams};
+use crate::reading::{self, LARGEST_STUDY, Section};
+use crate::study::frame::Frame;
+use crate::study::point::{Surroundings, resolve_point};
+use crate::study::shared::shared_content;
+use crate::study::sweep::{Sweep, Swept};
+use std::path::Path;
+use std::sync::Arc;
+
+/// After so many points with faults no more are looked at: a person mends these first.
+const FAULTY_POINTS: usize = 20;
+
+/// Reads a study file and resolves it into a plan, or gives every fault in it, in the order of their places.
+pub fn resolve(file: &Path, registry: &[&dyn Family]) -> Result<Plan, Vec<Fault>> {
+    let read = match reading::read(file, LARGEST_STUDY) {
+        Ok(read) => read,
+        Err(what) => return Err(vec![Fault::whole(what)]),
+    };
+    let source = match reading::text(read.bytes, &file.display().to_string()) {
+        Ok(source) => source,
+        Err(fault) => return Err(vec![fault]),
+    };
+    let folder = file.parent().unwrap_or(Path::new(""));
+    resolve_text(source, folder, registry)
+}
+
+/// The same for a text read already; paths in it are relative to `folder`.
+pub fn resolve_text(
+    source: Arc<Source>,
+    folder: &Path,
+    registry: &[&dyn Family],
+) -> Result<Plan, Vec<Fault>> {
+    let mut faults = Faults::default();
+    let root = reading::parse(&source, &mut faults);
+    let frame = Frame::read(&root, &mut faults);
+    let sweep = Sweep::read(&root, &mut faults);
+    let mut surroundings = Surroundings::new(folder, registry);
+    let points = match &sweep {
+        Some(sweep) => points(&root, sweep, &mut surroundings, &mut faults),
+        // Of a sweep at fault the study itself is still worth looking at.
+        None => {
+            let base = resolve_point(&root, Vec::new(), &mut surroundings, &mut faults);
+            base.into_iter().collect()
+        }
+    };
+    let (Some(frame), Some(sweep), false, true) =
+        (frame, sweep, points.is_empty(), faults.is_empty())
+    else {
+        if faults.is_empty() {
+            faults.push(Fault::whole(format!(
+                "{} could not be resolved, and no reason was given: this is a fault of the program",
+                source.name
+            )));
+        }
+        return Err(faults.sorted());
+    };
+    let shared =
+        (sweep.streams == Streams::Shared).then(|| shared_content(&root, &sweep, &points[0]));
+    Ok(Plan {
+        title: frame.title,
+        question: frame.question,
+        root: frame.root,
+        axes: sweep.plan_axes(),
+        combine: sweep.combine,
+        streams: sweep.streams,
+        shared,
+        points,
+        keep: frame.keep,
+        accepted: frame.accepted,
+    })
+}
+
+/// The points of a sweep. A fault that all of them have is shown as it is, another one beside the swept
+/// values that bring it about.
+fn points(
+    root: &Section,
+    sweep: &Sweep,
+    surroundings: &mut Surroundings<'_>,
+    faults: &mut Faults,
+) -> Vec<Point> {
+    let mut points = Vec::new();
+    let mut found: Vec<(Fault, usize, Vec<Swept>)> = Vec::new();
+    let mut looked_at = 0;
+    let mut faulty = 0;
+    for combination in sweep.combinations() {
+        let at = sweep.overlaid(root, &combination);
+        let values = combination.iter().map(Swept::value).collect();
+        let mut here = Faults::default();
+        points.extend(resolve_point(&at, values, surroundings, &mut here));
+        looked_at += 1;
+        faulty += usize::from(!here.is_empty());
+        for fault in here.0 {
+            match found.iter_mut().find(|(known, ..)| *known == fault) {
+                Some((_, count, _)) => *count += 1,
+                None => found.push((fault, 1, combination.clone())),
+            }
+        }
+        if faulty == FAULTY_POINTS {
+            break;
+        }
+    }
+    for (fault, count, combination) in found {
+        faults.push(beside(fault, count == looked_at, &combination));
+    }
+    points
+}
+
+/// A fault of a point with the places that belong to it: for one in a swept value the key that the value
+/// stands for, for one that only some points have the values swept there.
+fn beside(fault: Fault, everywhere: bool, combination: &[Swept]) -> Fault {
+    let within = |place: &Place| fault.place.as_ref().is_some_and(|at| place.holds(at));
+    let own = combination.iter().find(|swept| within(&swept.place));
+    if let Some(swept) = own {
+        let (place, path) = (swept.key.clone(), &swept.path);
+        return match place {
+            Some(place) => fault.related(place, format!("`{path}` is swept")),
+            None => fault,
+        };
+    }
+    if everywhere {
+        return fault;
+    }
+    combination.iter().fold(fault, |fault, swept| {
+        let label = format!("where `{}` is {}", swept.path, swept.json.canonical());
+        fault.related(swept.place.clone(), label)
+    })
+}
