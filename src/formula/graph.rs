@@ -22,7 +22,6 @@ pub(super) enum Node {
     Unary(Unary, Value),
     Binary(Binary, Value, Value),
     Ternary(Ternary, Value, Value, Value),
-    Call(&'static Function, Value, Value, Value),
     Reduce(Reduction, Value),
     /// Elements of a vector by their numbers from 1; NaN where there is no such element.
     Gather(Value, Value),
@@ -30,21 +29,8 @@ pub(super) enum Node {
     Element(Value, usize),
     /// A matrix of data times a vector, one number a row of the matrix.
     Dot(Matrix, Value),
-}
-
-impl Node {
-    /// The values it works on.
-    pub fn operands(&self) -> impl Iterator<Item = Value> {
-        let list = match *self {
-            Node::Constant(_) | Node::Input(_) | Node::Data(_) => [None; 3],
-            Node::Unary(_, a) | Node::Reduce(_, a) | Node::Element(a, _) | Node::Dot(_, a) => {
-                [Some(a), None, None]
-            }
-            Node::Binary(_, a, b) | Node::Gather(a, b) => [Some(a), Some(b), None],
-            Node::Ternary(_, a, b, c) | Node::Call(_, a, b, c) => [Some(a), Some(b), Some(c)],
-        };
-        list.into_iter().flatten()
-    }
+    /// A function that is no expression of the operations, element by element.
+    Call(&'static Function, Value, Value, Value),
 }
 
 /// One number from a vector.
@@ -155,6 +141,18 @@ impl Graph {
 
     pub(super) fn node(&self, v: Value) -> Node {
         self.nodes[v.0 as usize]
+    }
+
+    /// The values that a value is made from.
+    pub(super) fn operands(&self, v: Value) -> Vec<Value> {
+        match self.node(v) {
+            Node::Constant(_) | Node::Input(_) | Node::Data(_) => Vec::new(),
+            Node::Unary(_, a) | Node::Reduce(_, a) | Node::Element(a, _) | Node::Dot(_, a) => {
+                vec![a]
+            }
+            Node::Binary(_, a, b) | Node::Gather(a, b) => vec![a, b],
+            Node::Ternary(_, a, b, c) | Node::Call(_, a, b, c) => vec![a, b, c],
+        }
     }
 
     pub(super) fn is_number(&self, v: Value) -> bool {
@@ -478,9 +476,8 @@ impl Algebra for Graph {
     }
     fn call(&mut self, function: &'static Function, a: Value, b: Value, c: Value) -> Value {
         let shape = self.common_shape(&[a, b, c]);
-        match self.fold(&[a, b, c], &shape, &|x| {
-            (function.evaluate)(x[0], x[1], x[2])
-        }) {
+        let value = |x: &[f64]| (function.evaluate)(x[0], x[1], x[2]);
+        match self.fold(&[a, b, c], &shape, &value) {
             Some(v) => v,
             None => self.add(Node::Call(function, a, b, c), shape),
         }

@@ -68,7 +68,10 @@ impl Family for Plain {
                 ("law", law.map_or(Json::Null, |law| Json::text(law.text))),
                 ("method", Json::text(method.unwrap_or("slice"))),
                 ("start", start),
-                ("rows", Json::array(data.map(|(_, t)| Json::Count(t.rows as u64)))),
+                (
+                    "rows",
+                    Json::array(data.map(|(_, t)| Json::Count(t.rows as u64))),
+                ),
             ]),
             quantities: names.into_iter().enumerate().map(quantity).collect(),
         }))

@@ -12,7 +12,7 @@ impl Lowering<'_> {
             if let Form::Name(name) = &expr.form
                 && let Some(law) = laws::table().iter().find(|law| law.name() == name)
             {
-                fault = fault.help(format!("write `{}`", usage(*law)));
+                fault = fault.help(format!("write `{}`", law.usage()));
             }
             self.fault(fault);
             return None;
@@ -328,9 +328,8 @@ impl Lowering<'_> {
         let (term, at) = (self.law(law), self.numbers(x));
         let (term, at) = (term?, at?);
         let whole = Term {
-            value: at.value,
             shape: term.shape.clone(),
-            kind: Kind::Number,
+            ..at.clone()
         };
         self.agree(&[(&whole, law), (&at, x)])?;
         let value = match action {
@@ -367,16 +366,7 @@ fn common_shape<'a>(terms: impl Iterator<Item = &'a Term>) -> Shape {
 fn usages(entries: &[&'static dyn Law]) -> String {
     let all: Vec<String> = entries
         .iter()
-        .map(|law| format!("`{}`", usage(*law)))
+        .map(|law| format!("`{}`", law.usage()))
         .collect();
     all.join(" or ")
-}
-
-fn usage(law: &dyn Law) -> String {
-    let parameters: Vec<String> = law
-        .parameters()
-        .iter()
-        .map(|p| format!("{} = …", p.name))
-        .collect();
-    format!("{}({})", law.name(), parameters.join(", "))
 }
