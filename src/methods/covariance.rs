@@ -2,6 +2,7 @@
 //! Saksman & Tamminen 2001), in burn-in only.
 
 use super::gain::AdaptiveScale;
+use super::lockstep::{Moments, add_to_moments};
 use super::saved::Part;
 use crate::maths;
 
@@ -50,41 +51,20 @@ impl RunningCovariance {
         &self.factor
     }
 
-    /// Takes in where the active lanes stand: `position(i)` gives the row of the `i`-th coordinate, one
-    /// value a lane. Draw `s` weighs as s^2 (the step is 3 / (s + 2)), so that the way from the start is
-    /// forgotten as its cube: the first tenth of the past carries a thousandth of the weight.
-    pub fn add<'a>(&mut self, active: &[bool], position: impl Fn(usize) -> &'a [f64]) {
+    /// Takes in where the active lanes stand: coordinates `on` of `position`. Draw `s` weighs as s^2 (the
+    /// step is 3 / (s + 2)), so that the way from the start is forgotten as its cube: the first tenth of
+    /// the past carries a thousandth of the weight.
+    pub fn add(&mut self, on: &[usize], position: &[f64], active: &[bool]) {
         for (lane, gain) in self.gain.iter_mut().enumerate() {
             self.seen[lane] += u64::from(active[lane]);
             *gain = 3.0 / (self.seen[lane] as f64 + 2.0);
         }
-        let lanes = self.lanes;
-        for i in 0..self.n {
-            let here = position(i);
-            let mean = &mut self.mean[i * lanes..][..lanes];
-            let deviation = &mut self.deviation[i * lanes..][..lanes];
-            for l in 0..lanes {
-                deviation[l] = here[l] - mean[l];
-                let moved = mean[l] + self.gain[l] * deviation[l];
-                mean[l] = if active[l] { moved } else { mean[l] };
-            }
-        }
-        let mut at = 0;
-        for i in 0..self.n {
-            for j in 0..=i {
-                let covariance = &mut self.covariance[at..][..lanes];
-                let (a, b) = (
-                    &self.deviation[i * lanes..][..lanes],
-                    &self.deviation[j * lanes..][..lanes],
-                );
-                for l in 0..lanes {
-                    let gain = self.gain[l];
-                    let new = (1.0 - gain) * (covariance[l] + gain * (a[l] * b[l]));
-                    covariance[l] = if active[l] { new } else { covariance[l] };
-                }
-                at += lanes;
-            }
-        }
+        let moments = Moments {
+            mean: &mut self.mean,
+            covariance: &mut self.covariance,
+            deviation: &mut self.deviation,
+        };
+        add_to_moments(on, position, active, &self.gain, moments);
     }
 
     /// Makes a lane's factor anew if its time has come: first after 10 n draws (at least 50), then each

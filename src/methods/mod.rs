@@ -11,6 +11,7 @@ mod declaration;
 mod gain;
 mod integer_walk;
 mod kernel;
+mod lockstep;
 mod numbers;
 mod random_walk;
 mod read;

@@ -8,12 +8,12 @@ use super::covariance::RunningCovariance;
 use super::declaration::{Choice, Method};
 use super::gain::AdaptiveScale;
 use super::kernel::Kernel;
+use super::lockstep::{accept_rows, add_steps};
 use super::numbers;
 use super::saved::Reader;
 use super::walkers::Walkers;
 use crate::course::{Phase, State, Target};
 use crate::maths;
-use multiversion::multiversion;
 
 pub const DECLARATION: Method = Method {
     name: "metropolis",
@@ -119,22 +119,6 @@ impl RandomWalk {
         }
     }
 
-    fn propose(&mut self, walkers: &Walkers) {
-        let lanes = walkers.lanes;
-        self.proposal.copy_from_slice(&walkers.position);
-        for (i, &coordinate) in self.on.iter().enumerate() {
-            let row = &mut self.proposal[coordinate * lanes..][..lanes];
-            match &self.shape {
-                Some(shape) => {
-                    let first = i * (i + 1) / 2 * lanes;
-                    let factor = &shape.factor()[first..][..(i + 1) * lanes];
-                    add_products(row, factor, &self.normals);
-                }
-                None => add(row, &self.normals[i * lanes..][..lanes]),
-            }
-        }
-    }
-
     fn decide(&mut self, walkers: &mut Walkers) {
         let lanes = walkers.lanes;
         for lane in 0..lanes {
@@ -146,24 +130,19 @@ impl RandomWalk {
             }
             self.density[lane] = rise;
         }
-        for &coordinate in &self.on {
-            let from = coordinate * lanes;
-            let position = &mut walkers.position[from..][..lanes];
-            let proposal = &self.proposal[from..][..lanes];
-            for ((x, &new), &accept) in position.iter_mut().zip(proposal).zip(&self.accept) {
-                *x = if accept { new } else { *x };
-            }
-        }
+        accept_rows(
+            &self.on,
+            &self.accept,
+            &self.proposal,
+            &mut walkers.position,
+        );
     }
 
     /// Adapts each active lane by its own step; `density` holds the rises.
     fn learn(&mut self, walkers: &Walkers) {
         let lanes = walkers.lanes;
         if let Some(shape) = &mut self.shape {
-            let on = &self.on;
-            shape.add(&walkers.active, |i| {
-                &walkers.position[on[i] * lanes..][..lanes]
-            });
+            shape.add(&self.on, &walkers.position, &walkers.active);
         }
         for lane in (0..lanes).filter(|&lane| walkers.active[lane]) {
             let rise = self.density[lane];
@@ -193,7 +172,9 @@ impl RandomWalk {
 impl Kernel for RandomWalk {
     fn step(&mut self, target: &mut dyn Target, walkers: &mut Walkers, phase: Phase) {
         self.draw(walkers);
-        self.propose(walkers);
+        self.proposal.copy_from_slice(&walkers.position);
+        let factor = self.shape.as_ref().map(RunningCovariance::factor);
+        add_steps(&self.on, factor, &self.normals, &mut self.proposal);
         target.log_density(&self.proposal, &mut self.density);
         self.decide(walkers);
         match phase {
@@ -230,23 +211,6 @@ impl Kernel for RandomWalk {
         }
         notes.push(("scale".into(), self.scales[lane].value()));
         notes
-    }
-}
-
-fn add(row: &mut [f64], steps: &[f64]) {
-    for (x, step) in row.iter_mut().zip(steps) {
-        *x += step;
-    }
-}
-
-/// Adds a row of the factor times the normals, lane by lane, in the order of the columns.
-#[multiversion(targets("x86_64+avx512f+avx512dq", "x86_64+avx2"))]
-fn add_products(row: &mut [f64], factor: &[f64], normals: &[f64]) {
-    let lanes = row.len();
-    for (factor, normals) in factor.chunks_exact(lanes).zip(normals.chunks_exact(lanes)) {
-        for ((x, l), z) in row.iter_mut().zip(factor).zip(normals) {
-            *x += l * z;
-        }
     }
 }
 
