@@ -36,10 +36,10 @@ mod tests {
 
     #[test]
     fn values_are_stable() {
-        assert_eq!(golden(20_000, |s| beta(s, 2.0, 3.5)), "");
-        assert_eq!(golden(20_000, |s| beta(s, 0.5, 0.1)), "");
-        assert_eq!(golden(20_000, |s| beta(s, 2.0, 0.5)), "");
-        assert_eq!(golden(20_000, |s| beta(s, 1e-4, 1e-4)), "");
+        assert_eq!(golden(20_000, |s| beta(s, 2.0, 3.5)), "36f36d94af7eb3e9");
+        assert_eq!(golden(20_000, |s| beta(s, 0.5, 0.1)), "8dcbfce2c6eab8a0");
+        assert_eq!(golden(20_000, |s| beta(s, 2.0, 0.5)), "3dc0678e7e73c8e7");
+        assert_eq!(golden(20_000, |s| beta(s, 1e-4, 1e-4)), "496dc6ffe2755da3");
     }
 
     #[test]

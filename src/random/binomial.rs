@@ -89,11 +89,26 @@ mod tests {
 
     #[test]
     fn values_are_stable() {
-        assert_eq!(golden(20_000, |s| binomial(s, 12.0, 0.3)), "");
-        assert_eq!(golden(20_000, |s| binomial(s, 12.0, 0.7)), "");
-        assert_eq!(golden(20_000, |s| binomial(s, 500.0, 0.3)), "");
-        assert_eq!(golden(20_000, |s| binomial(s, 500.0, 0.98)), "");
-        assert_eq!(golden(20_000, |s| binomial(s, 1e12, 0.5)), "");
+        assert_eq!(
+            golden(20_000, |s| binomial(s, 12.0, 0.3)),
+            "30c7713adba2c6aa"
+        );
+        assert_eq!(
+            golden(20_000, |s| binomial(s, 12.0, 0.7)),
+            "ff5a92b15d5157b8"
+        );
+        assert_eq!(
+            golden(20_000, |s| binomial(s, 500.0, 0.3)),
+            "5c8bcdd46b94c41d"
+        );
+        assert_eq!(
+            golden(20_000, |s| binomial(s, 500.0, 0.98)),
+            "e0309407a9e26848"
+        );
+        assert_eq!(
+            golden(20_000, |s| binomial(s, 1e12, 0.5)),
+            "7e8e77dce28b2ed3"
+        );
     }
 
     #[test]

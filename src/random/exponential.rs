@@ -53,7 +53,7 @@ fn beyond(stream: &mut Stream, table: &Table, mut layer: usize, mut x: f64) -> f
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::random::trial::{LIMIT, distance, golden, numbers, stream};
+    use crate::random::trial::{LIMIT, RARE, cells, distance, golden, numbers, stream};
 
     fn distribution(x: f64) -> f64 {
         -maths::expm1(-x)
@@ -61,7 +61,7 @@ mod tests {
 
     #[test]
     fn values_are_stable() {
-        assert_eq!(golden(100_000, exponential), "");
+        assert_eq!(golden(100_000, exponential), "7b86585ce5d62508");
     }
 
     #[test]
@@ -77,10 +77,22 @@ mod tests {
             };
             (layer, inside, format!("{:016x}", value.to_bits()))
         };
-        assert_eq!(one(0x3000_0000_0000_0000), (0, true, "".into()));
-        assert_eq!(one(0xffff_ffff_ffff_ff00), (0, false, "".into()));
-        assert_eq!(one(0xff80_0000_0000_0001), (1, false, "".into()));
-        assert_eq!(one(0xffff_ffff_ffff_ffff), (255, false, "".into()));
+        assert_eq!(
+            one(0x3000_0000_0000_0000),
+            (0, true, "3ffa1762df1f0ca7".into())
+        );
+        assert_eq!(
+            one(0xffff_ffff_ffff_ff00),
+            (0, false, "4021f8fb5b70269e".into())
+        );
+        assert_eq!(
+            one(0xff80_0000_0000_0001),
+            (1, false, "3fe32d0e615ebbe0".into())
+        );
+        assert_eq!(
+            one(0xffff_ffff_ffff_ffff),
+            (255, false, "3fe32d0e615ebbe0".into())
+        );
     }
 
     #[test]
@@ -91,7 +103,8 @@ mod tests {
 
     #[test]
     fn a_wedge_without_its_test_is_caught() {
-        let faulty = |stream: &mut Stream| {
+        assert!(cells(6_000_000, 1, distribution, exponential) > RARE);
+        let untested = |stream: &mut Stream| {
             let (layer, x) = proposal(stream.word(), &EXPONENTIAL);
             if layer == 0 && x > TAIL {
                 TAIL - maths::ln(stream.open())
@@ -99,7 +112,6 @@ mod tests {
                 x
             }
         };
-        let d = distance(&numbers(1_000_000, 1, faulty), distribution);
-        assert!(d > LIMIT, "{d}");
+        assert!(cells(6_000_000, 1, distribution, untested) < RARE);
     }
 }

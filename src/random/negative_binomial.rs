@@ -27,8 +27,14 @@ mod tests {
 
     #[test]
     fn values_are_stable() {
-        assert_eq!(golden(20_000, |s| negative_binomial(s, 0.4, 2.0)), "");
-        assert_eq!(golden(20_000, |s| negative_binomial(s, 30.0, 2.0)), "");
+        assert_eq!(
+            golden(20_000, |s| negative_binomial(s, 0.4, 2.0)),
+            "846efe7ade4ece79"
+        );
+        assert_eq!(
+            golden(20_000, |s| negative_binomial(s, 30.0, 2.0)),
+            "2a4b9f696441f5e3"
+        );
     }
 
     #[test]
