@@ -19,6 +19,8 @@ mod recorded;
 mod start;
 mod start_reading;
 mod transform;
+#[cfg(test)]
+mod tests;
 mod unknown;
 mod uses;
 

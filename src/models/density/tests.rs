@@ -1,0 +1,269 @@
+use super::*;
+use crate::course::{EstimandSpec, Phase, StartSpec};
+use crate::maths::Unary;
+use crate::place::{Source, Text};
+use crate::reading::{Cells, Column, RowNames, Section, Table, parse};
+use std::collections::BTreeMap;
+
+fn ln(x: f64) -> f64 {
+    Unary::Ln.apply(x)
+}
+
+fn section(text: &str) -> Section {
+    let source = Arc::new(Source { name: "study.toml".into(), text: text.into() });
+    let mut faults = Faults::default();
+    let section = parse(&source, &mut faults);
+    assert!(faults.is_empty(), "{faults:?}");
+    section
+}
+
+/// Three stations with failures (the last one missing if `missing`) and hours.
+fn stations(missing: bool) -> BTreeMap<String, Arc<Table>> {
+    let place = Text::bare("station,failures,hours").place;
+    let names = ["Cawdle", "Fleam", "Ostrey"].map(str::to_string).to_vec();
+    let column = |name: &str, cells| Column { name: name.into(), unit: None, place: place.clone(), cells };
+    let numbers = |values: [f64; 3], missing: Vec<usize>| Cells::Numbers { values: values.into(), missing };
+    let table = Table {
+        name: "stations".into(),
+        rows: 3,
+        names: Some(RowNames { column: "station".into(), values: names.clone() }),
+        columns: vec![
+            column("station", Cells::Labels { levels: names, index: vec![0, 1, 2] }),
+            column("failures", numbers([5.0, 1.0, 4.0], if missing { vec![2] } else { vec![] })),
+            column("hours", numbers([94.0, 15.0, 62.0], vec![])),
+        ],
+        matrices: Vec::new(),
+        sha256: String::new(),
+        dropped: Vec::new(),
+    };
+    BTreeMap::from([("stations".to_string(), Arc::new(table))])
+}
+
+fn resolve(
+    study: &str,
+    tables: &BTreeMap<String, Arc<Table>>,
+    start: &StartSpec,
+    estimands: &[EstimandSpec],
+) -> Result<Arc<dyn Model>, Vec<String>> {
+    let study = section(study);
+    let mut faults = Faults::default();
+    let model = study.section("model", &mut faults).expect("a model");
+    model.has("family");
+    let predict = study.section("predict", &mut faults);
+    let sampler = study.section("sampler", &mut faults);
+    let request = Request {
+        model: &model,
+        sampler: sampler.as_ref(),
+        predict: predict.as_ref(),
+        estimands,
+        start,
+        tables,
+        every: 1,
+    };
+    let resolved = DensityFamily.resolve(&request, &mut faults);
+    match resolved {
+        Some(model) if faults.is_empty() => Ok(model),
+        _ => Err(faults.0.into_iter().map(|fault| fault.what).collect()),
+    }
+}
+
+const PUMPS: &str = r#"
+    [model]
+    family = "density"
+    [model.constant]
+    prior = 1
+    [model.unknown]
+    rate = { law = "gamma(shape = a, rate = b)", per = "stations" }
+    a = { law = "exponential(rate = prior)" }
+    b = { law = "gamma(shape = 0.1, rate = 1)" }
+    [model.observed]
+    failures = { of = "stations.failures", law = "poisson(mean = expected)" }
+    [model.define]
+    expected = "rate * stations.hours"
+"#;
+
+fn posterior(study: &str, tables: &BTreeMap<String, Arc<Table>>) -> Posterior {
+    let study = section(study);
+    let mut faults = Faults::default();
+    let model = study.section("model", &mut faults).expect("a model");
+    model.has("family");
+    let declared = Declared::read(&model, None, &mut faults);
+    let posterior = Posterior::build(&declared, tables, model.place(), &mut faults);
+    assert!(faults.is_empty(), "{faults:?}");
+    posterior.expect("no fault")
+}
+
+/// The same by hand: laws, Jacobians of the logarithms, and the Poisson counts.
+#[test]
+fn the_log_density_is_that_of_the_model_written_out() {
+    let posterior = posterior(PUMPS, &stations(false));
+    assert_eq!(posterior.order, ["a", "b", "rate", "expected"]);
+    let z = [0.3, -0.2, -2.0, -3.0, -2.5];
+    let mut found = [0.0];
+    posterior.target.machine(1).run(&z, &mut found);
+    let exp = |x| Unary::Exp.apply(x);
+    let ln_gamma = |x| Unary::LnGamma.apply(x);
+    let (a, b) = (exp(z[0]), exp(z[1]));
+    let gamma = |x: f64, shape: f64, rate: f64| shape * ln(rate) - ln_gamma(shape) + (shape - 1.0) * ln(x) - rate * x;
+    let mut wanted = -a + z[0] + gamma(b, 0.1, 1.0) + z[1];
+    for (i, (count, hours)) in [(5.0, 94.0), (1.0, 15.0), (4.0, 62.0)].into_iter().enumerate() {
+        let rate = exp(z[2 + i]);
+        wanted += gamma(rate, a, b) + z[2 + i];
+        wanted += count * ln(rate * hours) - rate * hours - ln_gamma(count + 1.0);
+    }
+    assert!((found[0] - wanted).abs() < 1e-12 * wanted.abs(), "{} is not {wanted}", found[0]);
+}
+
+/// A bounded unknown, its Jacobian checked by integrating the density over the coordinate: to 1 for a law
+/// alone. Without the Jacobian the integral is far off.
+#[test]
+fn transforms_keep_the_mass_of_a_law() {
+    for law in [
+        "beta(alpha = 2, beta = 3)",
+        "uniform(from = -1, to = 4)",
+        "gamma(shape = 2.5, rate = 0.7)",
+        "truncated(normal(mean = 0, sd = 1), from = 0.5, to = 2)",
+        "truncated(normal(mean = 0, sd = 1), to = -0.5)",
+    ] {
+        let study = format!("[model]\nfamily = \"density\"\n[model.unknown]\nx = {{ law = \"{law}\" }}\n");
+        let posterior = posterior(&study, &BTreeMap::new());
+        let mut machine = posterior.target.machine(1);
+        let mut mass = 0.0;
+        let step = 1.0 / 256.0;
+        for i in -10_000..10_000 {
+            let mut out = [0.0];
+            machine.run(&[f64::from(i) * step], &mut out);
+            mass += Unary::Exp.apply(out[0]) * step;
+        }
+        assert!((mass - 1.0).abs() < 1e-9, "{law}: {mass}");
+    }
+}
+
+#[test]
+fn starts_lie_in_the_middle_half_and_may_be_stated() {
+    let posterior = posterior(PUMPS, &stations(false));
+    for chain in 0..20 {
+        let seed = ChainSeed { chain, stream_key: [chain as u8; 32] };
+        let z = Start::Spread.of_chain(&posterior, &seed).unwrap();
+        let a = Unary::Exp.apply(z[0]);
+        // Quartiles of the exponential law.
+        assert!(a > ln(4.0 / 3.0) && a < ln(4.0), "{a}");
+        let at = Start::At(BTreeMap::from([("rate".to_string(), vec![0.1, 0.2, 0.3])]));
+        let stated = at.of_chain(&posterior, &seed).unwrap();
+        assert!((stated[4] - ln(0.3)).abs() < 1e-15);
+        assert_eq!(stated[..2], z[..2], "what is not stated is spread as ever");
+    }
+    let wrong = Start::At(BTreeMap::from([("a".to_string(), vec![-1.0])]));
+    let seed = ChainSeed { chain: 0, stream_key: [0; 32] };
+    let fault = wrong.of_chain(&posterior, &seed).unwrap_err();
+    assert!(fault.0.contains("-1, lies outside the support"), "{}", fault.0);
+}
+
+#[test]
+fn one_or_many_lanes_give_the_same_blocks_and_a_saved_state_goes_on() {
+    let model = resolve(PUMPS, &stations(false), &StartSpec::Spread, &[]).unwrap();
+    let seeds: Vec<ChainSeed> = (0..3).map(|chain| ChainSeed { chain, stream_key: [chain as u8 + 1; 32] }).collect();
+    let mut together = model.clone().course(&seeds).unwrap();
+    let burn = together.advance(Phase::BurnIn, 50);
+    let state = together.save(1);
+    let draws = together.advance(Phase::Draws, 50);
+    let mut alone = model.clone().course(&seeds[1..2]).unwrap();
+    assert_eq!(alone.advance(Phase::BurnIn, 50)[0], burn[1]);
+    assert_eq!(alone.save(0), state);
+    let mut later = model.course(&seeds[1..2]).unwrap();
+    later.load(0, &state).unwrap();
+    assert_eq!(later.advance(Phase::Draws, 50)[0], draws[1]);
+    assert_ne!(draws[0], draws[1]);
+}
+
+/// A missing count with everything else known is drawn from its law: its mean is the law's.
+#[test]
+fn a_missing_cell_follows_the_observed_law() {
+    let study = r#"
+        [model]
+        family = "density"
+        [model.unknown]
+        level = { law = "normal(mean = 0, sd = 1)" }
+        [model.observed]
+        failures = { of = "stations.failures", law = "poisson(mean = stations.hours / 10)" }
+        [predict]
+        again = "poisson(mean = 4 + level^2)"
+    "#;
+    let estimand = |name: &str, of: &str| EstimandSpec {
+        name: Text::bare(name),
+        of: Some(Text::bare(of)),
+        unit: None,
+    };
+    let estimands = [estimand("filled", "stations.failures[\"Ostrey\"]"), estimand("again", "again")];
+    let model = resolve(study, &stations(true), &StartSpec::Spread, &estimands).unwrap();
+    let mut course = model.course(&[ChainSeed { chain: 0, stream_key: [7; 32] }]).unwrap();
+    course.advance(Phase::BurnIn, 500);
+    let draws = 20_000;
+    let block = &course.advance(Phase::Draws, draws)[0];
+    let mean = |values: &[f64]| values.iter().sum::<f64>() / values.len() as f64;
+    let filled = mean(&block.values[..draws]);
+    // Mean 6.2; the walk on integers is correlated: an error of about sqrt(6.2 * 30 / 20000).
+    assert!((filled - 6.2).abs() < 0.4, "{filled}");
+    // E(4 + level^2) = 5, variance 5 + 2: an error of sqrt(7 / 20000) = 0.019, a little more for the walk.
+    let again = mean(&block.values[draws..]);
+    assert!((again - 5.0).abs() < 0.12, "{again}");
+}
+
+#[test]
+fn improper_posteriors_that_can_be_seen_are_faults() {
+    let tables = stations(false);
+    let unread = r#"
+        [model]
+        family = "density"
+        [model.unknown]
+        a = { law = "flat()" }
+        b = { law = "normal(mean = a, sd = 1)" }
+    "#;
+    let faults = resolve(unread, &tables, &StartSpec::Prior, &[]).err().unwrap();
+    assert!(faults.iter().any(|f| f.contains("nothing observed depends on `a`")), "{faults:?}");
+    let spread = r#"
+        [model]
+        family = "density"
+        [model.unknown]
+        spread = { law = "log_flat()" }
+        effect = { law = "normal(mean = 0, sd = spread)", per = "stations" }
+        [model.observed]
+        failures = { of = "stations.failures", law = "poisson(mean = exp(effect))" }
+    "#;
+    let faults = resolve(spread, &tables, &StartSpec::Spread, &[]).err().unwrap();
+    assert!(faults.iter().any(|f| f.contains("scale of unknowns alone")), "{faults:?}");
+}
+
+#[test]
+fn a_cycle_and_a_value_outside_the_support_are_named() {
+    let tables = stations(false);
+    let cycle = PUMPS.replace("exponential(rate = prior)", "exponential(rate = expected[1])");
+    let faults = resolve(&cycle, &tables, &StartSpec::Spread, &[]).err().unwrap();
+    assert!(faults.iter().any(|f| f.contains("defined by each other")), "{faults:?}");
+    let negative = PUMPS.replace("of = \"stations.failures\"", "of = \"2 - stations.failures\"");
+    let faults = resolve(&negative, &tables, &StartSpec::Spread, &[]).err().unwrap();
+    assert!(faults.iter().any(|f| f.contains("can't have been observed") && f.contains("and 1 more")), "{faults:?}");
+}
+
+/// Neither the order of the file nor the way a formula is spaced can move a key.
+#[test]
+fn the_canonical_form_does_not_know_the_order_of_the_file() {
+    let tables = stations(false);
+    let other = r#"
+        [model]
+        family = "density"
+        [model.define]
+        expected = "(rate*stations.hours)"
+        [model.observed]
+        failures = { law = "poisson( mean = expected )", of = "stations.failures" }
+        [model.unknown]
+        b = { law = "gamma(shape = 0.10, rate = 1.0)" }
+        a = { law = "exponential(rate = prior)" }
+        rate = { per = "stations", law = "gamma(shape = a, rate = b)" }
+        [model.constant]
+        prior = 1.0
+    "#;
+    let canonical = |study: &str| resolve(study, &tables, &StartSpec::Spread, &[]).unwrap().canonical();
+    assert_eq!(canonical(PUMPS), canonical(other));
+    assert_ne!(canonical(PUMPS), canonical(&other.replace("0.10", "0.11")));
+}
