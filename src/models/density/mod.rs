@@ -18,9 +18,9 @@ mod posterior;
 mod recorded;
 mod start;
 mod start_reading;
-mod transform;
 #[cfg(test)]
 mod tests;
+mod transform;
 mod unknown;
 mod uses;
 

@@ -2,7 +2,7 @@ use super::*;
 use crate::course::{EstimandSpec, Phase, StartSpec};
 use crate::maths::Unary;
 use crate::place::{Source, Text};
-use crate::reading::{Cells, Column, RowNames, Section, Table, parse};
+use crate::reading::{Section, Table, data, parse};
 use std::collections::BTreeMap;
 
 fn ln(x: f64) -> f64 {
@@ -10,7 +10,10 @@ fn ln(x: f64) -> f64 {
 }
 
 fn section(text: &str) -> Section {
-    let source = Arc::new(Source { name: "study.toml".into(), text: text.into() });
+    let source = Arc::new(Source {
+        name: "study.toml".into(),
+        text: text.into(),
+    });
     let mut faults = Faults::default();
     let section = parse(&source, &mut faults);
     assert!(faults.is_empty(), "{faults:?}");
@@ -19,23 +22,13 @@ fn section(text: &str) -> Section {
 
 /// Three stations with failures (the last one missing if `missing`) and hours.
 fn stations(missing: bool) -> BTreeMap<String, Arc<Table>> {
-    let place = Text::bare("station,failures,hours").place;
-    let names = ["Cawdle", "Fleam", "Ostrey"].map(str::to_string).to_vec();
-    let column = |name: &str, cells| Column { name: name.into(), unit: None, place: place.clone(), cells };
-    let numbers = |values: [f64; 3], missing: Vec<usize>| Cells::Numbers { values: values.into(), missing };
-    let table = Table {
-        name: "stations".into(),
-        rows: 3,
-        names: Some(RowNames { column: "station".into(), values: names.clone() }),
-        columns: vec![
-            column("station", Cells::Labels { levels: names, index: vec![0, 1, 2] }),
-            column("failures", numbers([5.0, 1.0, 4.0], if missing { vec![2] } else { vec![] })),
-            column("hours", numbers([94.0, 15.0, 62.0], vec![])),
-        ],
-        matrices: Vec::new(),
-        sha256: String::new(),
-        dropped: Vec::new(),
-    };
+    let folder = tempfile::tempdir().expect("a folder");
+    let last = if missing { "" } else { "4" };
+    let text = format!("station,failures,hours\nCawdle,5,94\nFleam,1,15\nOstrey,{last},62\n");
+    std::fs::write(folder.path().join("stations.csv"), text).expect("a file");
+    let declared = section("file = \"stations.csv\"\nnames = \"station\"\nmissing = \"unknown\"\n");
+    let mut faults = Faults::default();
+    let table = data("stations", &declared, folder.path(), &mut faults).expect("a table");
     BTreeMap::from([("stations".to_string(), Arc::new(table))])
 }
 
@@ -104,14 +97,23 @@ fn the_log_density_is_that_of_the_model_written_out() {
     let exp = |x| Unary::Exp.apply(x);
     let ln_gamma = |x| Unary::LnGamma.apply(x);
     let (a, b) = (exp(z[0]), exp(z[1]));
-    let gamma = |x: f64, shape: f64, rate: f64| shape * ln(rate) - ln_gamma(shape) + (shape - 1.0) * ln(x) - rate * x;
+    let gamma = |x: f64, shape: f64, rate: f64| {
+        shape * ln(rate) - ln_gamma(shape) + (shape - 1.0) * ln(x) - rate * x
+    };
     let mut wanted = -a + z[0] + gamma(b, 0.1, 1.0) + z[1];
-    for (i, (count, hours)) in [(5.0, 94.0), (1.0, 15.0), (4.0, 62.0)].into_iter().enumerate() {
+    for (i, (count, hours)) in [(5.0, 94.0), (1.0, 15.0), (4.0, 62.0)]
+        .into_iter()
+        .enumerate()
+    {
         let rate = exp(z[2 + i]);
         wanted += gamma(rate, a, b) + z[2 + i];
         wanted += count * ln(rate * hours) - rate * hours - ln_gamma(count + 1.0);
     }
-    assert!((found[0] - wanted).abs() < 1e-12 * wanted.abs(), "{} is not {wanted}", found[0]);
+    assert!(
+        (found[0] - wanted).abs() < 1e-12 * wanted.abs(),
+        "{} is not {wanted}",
+        found[0]
+    );
 }
 
 /// A bounded unknown, its Jacobian checked by integrating the density over the coordinate: to 1 for a law
@@ -125,7 +127,8 @@ fn transforms_keep_the_mass_of_a_law() {
         "truncated(normal(mean = 0, sd = 1), from = 0.5, to = 2)",
         "truncated(normal(mean = 0, sd = 1), to = -0.5)",
     ] {
-        let study = format!("[model]\nfamily = \"density\"\n[model.unknown]\nx = {{ law = \"{law}\" }}\n");
+        let study =
+            format!("[model]\nfamily = \"density\"\n[model.unknown]\nx = {{ law = \"{law}\" }}\n");
         let posterior = posterior(&study, &BTreeMap::new());
         let mut machine = posterior.target.machine(1);
         let mut mass = 0.0;
@@ -143,7 +146,10 @@ fn transforms_keep_the_mass_of_a_law() {
 fn starts_lie_in_the_middle_half_and_may_be_stated() {
     let posterior = posterior(PUMPS, &stations(false));
     for chain in 0..20 {
-        let seed = ChainSeed { chain, stream_key: [chain as u8; 32] };
+        let seed = ChainSeed {
+            chain,
+            stream_key: [chain as u8; 32],
+        };
         let z = Start::Spread.of_chain(&posterior, &seed).unwrap();
         let a = Unary::Exp.apply(z[0]);
         // Quartiles of the exponential law.
@@ -154,15 +160,27 @@ fn starts_lie_in_the_middle_half_and_may_be_stated() {
         assert_eq!(stated[..2], z[..2], "what is not stated is spread as ever");
     }
     let wrong = Start::At(BTreeMap::from([("a".to_string(), vec![-1.0])]));
-    let seed = ChainSeed { chain: 0, stream_key: [0; 32] };
+    let seed = ChainSeed {
+        chain: 0,
+        stream_key: [0; 32],
+    };
     let fault = wrong.of_chain(&posterior, &seed).unwrap_err();
-    assert!(fault.0.contains("-1, lies outside the support"), "{}", fault.0);
+    assert!(
+        fault.0.contains("-1, lies outside the support"),
+        "{}",
+        fault.0
+    );
 }
 
 #[test]
 fn one_or_many_lanes_give_the_same_blocks_and_a_saved_state_goes_on() {
     let model = resolve(PUMPS, &stations(false), &StartSpec::Spread, &[]).unwrap();
-    let seeds: Vec<ChainSeed> = (0..3).map(|chain| ChainSeed { chain, stream_key: [chain as u8 + 1; 32] }).collect();
+    let seeds: Vec<ChainSeed> = (0..3)
+        .map(|chain| ChainSeed {
+            chain,
+            stream_key: [chain as u8 + 1; 32],
+        })
+        .collect();
     let mut together = model.clone().course(&seeds).unwrap();
     let burn = together.advance(Phase::BurnIn, 50);
     let state = together.save(1);
@@ -194,9 +212,17 @@ fn a_missing_cell_follows_the_observed_law() {
         of: Some(Text::bare(of)),
         unit: None,
     };
-    let estimands = [estimand("filled", "stations.failures[\"Ostrey\"]"), estimand("again", "again")];
+    let estimands = [
+        estimand("filled", "stations.failures[\"Ostrey\"]"),
+        estimand("again", "again"),
+    ];
     let model = resolve(study, &stations(true), &StartSpec::Spread, &estimands).unwrap();
-    let mut course = model.course(&[ChainSeed { chain: 0, stream_key: [7; 32] }]).unwrap();
+    let mut course = model
+        .course(&[ChainSeed {
+            chain: 0,
+            stream_key: [7; 32],
+        }])
+        .unwrap();
     course.advance(Phase::BurnIn, 500);
     let draws = 20_000;
     let block = &course.advance(Phase::Draws, draws)[0];
@@ -219,8 +245,15 @@ fn improper_posteriors_that_can_be_seen_are_faults() {
         a = { law = "flat()" }
         b = { law = "normal(mean = a, sd = 1)" }
     "#;
-    let faults = resolve(unread, &tables, &StartSpec::Prior, &[]).err().unwrap();
-    assert!(faults.iter().any(|f| f.contains("nothing observed depends on `a`")), "{faults:?}");
+    let faults = resolve(unread, &tables, &StartSpec::Prior, &[])
+        .err()
+        .unwrap();
+    assert!(
+        faults
+            .iter()
+            .any(|f| f.contains("nothing observed depends on `a`")),
+        "{faults:?}"
+    );
     let spread = r#"
         [model]
         family = "density"
@@ -230,19 +263,42 @@ fn improper_posteriors_that_can_be_seen_are_faults() {
         [model.observed]
         failures = { of = "stations.failures", law = "poisson(mean = exp(effect))" }
     "#;
-    let faults = resolve(spread, &tables, &StartSpec::Spread, &[]).err().unwrap();
-    assert!(faults.iter().any(|f| f.contains("scale of unknowns alone")), "{faults:?}");
+    let faults = resolve(spread, &tables, &StartSpec::Spread, &[])
+        .err()
+        .unwrap();
+    assert!(
+        faults.iter().any(|f| f.contains("scale of unknowns alone")),
+        "{faults:?}"
+    );
 }
 
 #[test]
 fn a_cycle_and_a_value_outside_the_support_are_named() {
     let tables = stations(false);
-    let cycle = PUMPS.replace("exponential(rate = prior)", "exponential(rate = expected[1])");
-    let faults = resolve(&cycle, &tables, &StartSpec::Spread, &[]).err().unwrap();
-    assert!(faults.iter().any(|f| f.contains("defined by each other")), "{faults:?}");
-    let negative = PUMPS.replace("of = \"stations.failures\"", "of = \"2 - stations.failures\"");
-    let faults = resolve(&negative, &tables, &StartSpec::Spread, &[]).err().unwrap();
-    assert!(faults.iter().any(|f| f.contains("can't have been observed") && f.contains("and 1 more")), "{faults:?}");
+    let cycle = PUMPS.replace(
+        "exponential(rate = prior)",
+        "exponential(rate = expected[1])",
+    );
+    let faults = resolve(&cycle, &tables, &StartSpec::Spread, &[])
+        .err()
+        .unwrap();
+    assert!(
+        faults.iter().any(|f| f.contains("defined by each other")),
+        "{faults:?}"
+    );
+    let negative = PUMPS.replace(
+        "of = \"stations.failures\"",
+        "of = \"2 - stations.failures\"",
+    );
+    let faults = resolve(&negative, &tables, &StartSpec::Spread, &[])
+        .err()
+        .unwrap();
+    assert!(
+        faults
+            .iter()
+            .any(|f| f.contains("can't have been observed") && f.contains("and 1 more")),
+        "{faults:?}"
+    );
 }
 
 /// Neither the order of the file nor the way a formula is spaced can move a key.
@@ -263,7 +319,11 @@ fn the_canonical_form_does_not_know_the_order_of_the_file() {
         [model.constant]
         prior = 1.0
     "#;
-    let canonical = |study: &str| resolve(study, &tables, &StartSpec::Spread, &[]).unwrap().canonical();
+    let canonical = |study: &str| {
+        resolve(study, &tables, &StartSpec::Spread, &[])
+            .unwrap()
+            .canonical()
+    };
     assert_eq!(canonical(PUMPS), canonical(other));
     assert_ne!(canonical(PUMPS), canonical(&other.replace("0.10", "0.11")));
 }
