@@ -1,7 +1,38 @@
 //! Arguments, one file a command, the registry of families and methods, progress, exit status, and the
 //! only printing.
 
+mod arguments;
+mod faults;
+mod output;
+mod own_fault;
+mod progress;
+mod signals;
+mod status;
+
+pub use own_fault::watch as watch_own_faults;
+pub use status::Status;
+
+use arguments::{Arguments, Command};
+use clap::Parser;
+
 /// Runs one command line and gives the exit status.
-pub fn run(_arguments: impl Iterator<Item = std::ffi::OsString>) -> u8 {
-    2
+pub fn run(arguments: impl Iterator<Item = std::ffi::OsString>) -> u8 {
+    let arguments = match Arguments::try_parse_from(arguments) {
+        Ok(arguments) => arguments,
+        Err(told) => {
+            let _ = told.print();
+            let status = if told.use_stderr() {
+                Status::Usage
+            } else {
+                Status::Done
+            };
+            return status.code();
+        }
+    };
+    let status = match arguments.command {
+        Command::Check { study } => todo!(),
+        Command::Run { .. } => todo!(),
+        Command::Catalogue { list } => todo!(),
+    };
+    status.code()
 }

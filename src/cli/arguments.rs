@@ -1,0 +1,49 @@
+//! The command line.
+
+use clap::{Parser, Subcommand, ValueEnum};
+use std::num::NonZeroUsize;
+use std::path::PathBuf;
+
+/// Markov chain Monte Carlo studies from a text file, with the error of each figure and the grounds it
+/// stands on.
+#[derive(Debug, Parser)]
+#[command(name = "odograph", version, arg_required_else_help = true)]
+pub struct Arguments {
+    #[command(subcommand)]
+    pub command: Command,
+}
+
+#[derive(Debug, Subcommand)]
+pub enum Command {
+    /// Read a study and say what would be run, why, on what grounds and at what cost; no draws
+    Check {
+        /// The study, a TOML file
+        study: PathBuf,
+    },
+    /// Run a study; a run that was interrupted goes on, one that is done is reported again
+    Run {
+        /// The study, a TOML file
+        study: PathBuf,
+        /// Folder for the results
+        #[arg(long, value_name = "DIR", default_value = "results")]
+        into: PathBuf,
+        /// Threads to work on; no digit depends on it [default: all that the machine offers]
+        #[arg(long, value_name = "N")]
+        threads: Option<NonZeroUsize>,
+        /// Print the summary as JSON on stdout
+        #[arg(long)]
+        json: bool,
+    },
+    /// List the laws, functions and methods that a study may use
+    Catalogue {
+        /// Only one of the lists
+        list: Option<List>,
+    },
+}
+
+#[derive(Debug, Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub enum List {
+    Laws,
+    Functions,
+    Methods,
+}
