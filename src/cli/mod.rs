@@ -2,7 +2,6 @@
 //! only printing.
 
 mod arguments;
-mod faults;
 mod output;
 mod own_fault;
 mod progress;
@@ -29,7 +28,7 @@ pub fn run(arguments: impl Iterator<Item = std::ffi::OsString>) -> u8 {
             return status.code();
         }
     };
-    let status = match arguments.command {
+    let status: Status = match arguments.command {
         Command::Check { study } => todo!(),
         Command::Run { .. } => todo!(),
         Command::Catalogue { list } => todo!(),

@@ -19,9 +19,9 @@ fn words(panic: &PanicHookInfo) -> String {
         .copied()
         .or_else(|| said.downcast_ref::<String>().map(String::as_str))
         .unwrap_or("no words");
-    let place = panic
-        .location()
-        .map_or(String::new(), |at| format!(" ({}:{})", at.file(), at.line()));
+    let place = panic.location().map_or(String::new(), |at| {
+        format!(" ({}:{})", at.file(), at.line())
+    });
     format!(
         "\nodograph failed, and this is its own fault, not that of your study: {said}{place}\n\
          What was journalled stands; the same command goes on from there. Please report this with the \

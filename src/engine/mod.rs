@@ -17,6 +17,7 @@ mod conduct;
 mod halt;
 mod judge;
 mod lanes;
+mod review;
 mod sink;
 mod task;
 #[cfg(test)]
@@ -31,5 +32,6 @@ pub use conduct::{Ended, Orders, PointEnd, conduct};
 pub use halt::Halt;
 pub use judge::{Judge, Settling, Verdict};
 pub use lanes::WIDEST;
+pub use review::{PlanJudge, Reviewed, summary};
 pub use sink::{Event, Finished, Journal, Mark, Reader, Sink, Stood};
 pub use task::{Chain, Task};

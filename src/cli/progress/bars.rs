@@ -80,7 +80,9 @@ impl Bars {
                 self.last_review = review(event, pace).unwrap_or_default();
             }
             Event::PointDone { point } => {
-                let gone = self.chains.extract_if((*point, 0)..(*point + 1, 0), |_, _| true);
+                let gone = self
+                    .chains
+                    .extract_if((*point, 0)..(*point + 1, 0), |_, _| true);
                 for (_, bar) in gone {
                     bar.finish_and_clear();
                     self.all.remove(&bar);

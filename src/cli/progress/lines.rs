@@ -74,17 +74,27 @@ pub fn review(event: &Event, pace: &Pace) -> Option<String> {
 fn standing(pace: &Pace, now: Duration) -> String {
     let speed = pace.words(now);
     if pace.points > 1 {
-        return format!("{} of {} points done; {speed}", pace.points_done, pace.points);
+        return format!(
+            "{} of {} points done; {speed}",
+            pace.points_done, pace.points
+        );
     }
     let chains = pace.under_way.values().flatten().flatten();
     let behind = chains.min_by_key(|chain| chain.done);
-    let place = behind.map_or(String::new(), |Standing { phase, done, target }| {
-        let phase = match phase {
-            Phase::BurnIn => "burn-in",
-            Phase::Draws => "draws",
-        };
-        format!("{phase} {done} of {target} a chain; ")
-    });
+    let place = behind.map_or(
+        String::new(),
+        |Standing {
+             phase,
+             done,
+             target,
+         }| {
+            let phase = match phase {
+                Phase::BurnIn => "burn-in",
+                Phase::Draws => "draws",
+            };
+            format!("{phase} {done} of {target} a chain; ")
+        },
+    );
     format!("{place}{speed}")
 }
 

@@ -58,7 +58,10 @@ impl Progress {
     }
 }
 
-#[expect(clippy::disallowed_methods, reason = "progress; no digit sees the clock")]
+#[expect(
+    clippy::disallowed_methods,
+    reason = "progress; no digit sees the clock"
+)]
 fn clock() -> Instant {
     Instant::now()
 }
