@@ -1,5 +1,9 @@
 //! Arguments in, exit status out.
 
-fn main() -> std::process::ExitCode {
-    std::process::ExitCode::from(odograph::cli::run(std::env::args_os()))
+use odograph::cli;
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    cli::watch_own_faults();
+    ExitCode::from(cli::run(std::env::args_os()))
 }

@@ -2,13 +2,20 @@
 //! only printing.
 
 mod arguments;
+mod catalogue;
+mod check;
+mod outcome;
 mod output;
 mod own_fault;
 mod progress;
+mod registry;
+mod run;
 mod signals;
 mod status;
+mod study;
 
 pub use own_fault::watch as watch_own_faults;
+pub use registry::FAMILIES;
 pub use status::Status;
 
 use arguments::{Arguments, Command};
@@ -28,10 +35,15 @@ pub fn run(arguments: impl Iterator<Item = std::ffi::OsString>) -> u8 {
             return status.code();
         }
     };
-    let status: Status = match arguments.command {
-        Command::Check { study } => todo!(),
-        Command::Run { .. } => todo!(),
-        Command::Catalogue { list } => todo!(),
+    let status = match arguments.command {
+        Command::Check { study } => check::check(&study),
+        Command::Run {
+            study,
+            into,
+            threads,
+            json,
+        } => run::run(&study, &into, threads, json),
+        Command::Catalogue { list } => catalogue::catalogue(list),
     };
     status.code()
 }

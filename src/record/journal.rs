@@ -80,6 +80,11 @@ impl JournalFile {
         })
     }
 
+    /// Bytes written so far.
+    pub fn length(&self) -> u64 {
+        self.end
+    }
+
     /// Asks that what is written be on the disk soon.
     pub fn sync_soon(&mut self) {
         self.syncer.ask();

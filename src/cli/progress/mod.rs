@@ -8,6 +8,7 @@ use crate::engine::Event;
 use bars::Bars;
 use lines::Lines;
 use pace::Pace;
+pub use pace::span;
 use std::io::IsTerminal;
 use std::time::Instant;
 

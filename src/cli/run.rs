@@ -1,0 +1,201 @@
+//! `run`: from a study to its folder of results, and what is said about it.
+
+use super::outcome::{self, Filed};
+use super::output::{say, tell};
+use super::progress::Progress;
+use super::signals;
+use super::status::Status;
+use super::study;
+use crate::engine::{
+    Event, Finished, Halt, Journal, Mark, Orders, PlanJudge, Reader, Sink, Stood, Task, conduct,
+};
+use crate::plan::Plan;
+use crate::record::{self, Circumstances, Entry, Folder, JournalFile, Open, RecordFault};
+use std::num::NonZeroUsize;
+use std::path::Path;
+use std::sync::Arc;
+
+/// Runs a study, goes on with it, or reports it again.
+pub fn run(file: &Path, into: &Path, threads: Option<NonZeroUsize>, json: bool) -> Status {
+    let done = carry_out(file, into, threads);
+    match done {
+        Ok(filed) => report(&filed, json),
+        Err(status) => status,
+    }
+}
+
+/// Prints the results that stand in a folder.
+fn report(filed: &Filed, json: bool) -> Status {
+    let name = if json {
+        "data/summary.json"
+    } else {
+        "data/summary.txt"
+    };
+    let printed = record::read(&filed.path, name).and_then(|text| {
+        let text = if json {
+            text
+        } else {
+            format!("{text}\nFiles: {}\n", filed.path.display())
+        };
+        say(&text).map_err(|fault| RecordFault::disk("write", "stdout".as_ref(), &fault))
+    });
+    match printed {
+        Ok(()) => filed.status,
+        Err(fault) => tell_record(&fault).max(filed.status),
+    }
+}
+
+fn carry_out(file: &Path, into: &Path, threads: Option<NonZeroUsize>) -> Result<Filed, Status> {
+    let plan = study::plan(file)?;
+    let stops = study::stops(&plan);
+    if !stops.is_empty() {
+        return Err(study::tell_stops(&stops));
+    }
+    let folder = Folder::of(into, file, &plan.digest());
+    match folder.enter().map_err(|fault| tell_record(&fault))? {
+        Entry::Done(path) => {
+            tell("this study was run before; its results are reported from its files");
+            outcome::again(path, &plan).map_err(|fault| tell_record(&fault))
+        }
+        Entry::Open(open) => {
+            let threads = threads.map_or_else(all_threads, NonZeroUsize::get);
+            work(file, &plan, *open, threads)
+        }
+    }
+}
+
+#[expect(
+    clippy::disallowed_methods,
+    reason = "the number of threads, where none is given"
+)]
+fn all_threads() -> usize {
+    std::thread::available_parallelism().map_or(1, NonZeroUsize::get)
+}
+
+/// Draws until every point has ended, and files what came out.
+fn work(file: &Path, plan: &Plan, mut open: Open, threads: usize) -> Result<Filed, Status> {
+    let tasks = Task::all(plan);
+    let ready = prepare(file, plan, &tasks, &open, threads);
+    let circumstances = ready.map_err(|fault| tell_record(&fault))?;
+    signals::watch();
+    let mut desk = Desk {
+        journal: &mut open.journal,
+        progress: Progress::new(),
+    };
+    let orders = Orders {
+        threads,
+        lanes: None,
+        stop: &signals::STOP,
+    };
+    let ends = conduct(&tasks, &PlanJudge::new(plan), &orders, &mut desk);
+    desk.progress.end();
+    let ends = match ends {
+        Ok(ends) => ends,
+        Err(halt) => {
+            let (status, words) = halted(&halt);
+            tell(&words);
+            let _ = circumstances.end(&open, &words);
+            return Err(status);
+        }
+    };
+    let filed = outcome::file(plan, &ends, open, circumstances);
+    filed.map_err(|fault| match fault {
+        outcome::NotFiled::NoStart(words) => {
+            tell(&words);
+            Status::Fault
+        }
+        outcome::NotFiled::Record(fault) => tell_record(&fault),
+    })
+}
+
+/// What must stand before the first draw: room, study, inputs, plan, circumstances.
+fn prepare(
+    file: &Path,
+    plan: &Plan,
+    tasks: &[Task],
+    open: &Open,
+    threads: usize,
+) -> Result<Circumstances, RecordFault> {
+    let needs = record::needs(tasks);
+    if let Some(warning) = record::check_room(open.path(), needs, open.journal.length())? {
+        tell(&warning);
+    }
+    if open.journal.stood > 0 {
+        tell(&format!(
+            "going on with a run that was interrupted: {} blocks stand",
+            open.journal.stood
+        ));
+    }
+    let study = std::fs::read(file).map_err(|fault| RecordFault::disk("read", file, &fault))?;
+    open.write("data/study.toml", &study)?;
+    open.write("data/plan.json", plan.canonical().pretty().as_bytes())?;
+    Circumstances::begin(open, threads)
+}
+
+fn halted(halt: &Halt) -> (Status, String) {
+    match halt {
+        Halt::Interrupted => (
+            Status::Interrupted,
+            "interrupted; what was drawn stands, and the same command goes on from there".into(),
+        ),
+        Halt::Start { words, .. } => (Status::Fault, words.clone()),
+        Halt::Journal(words) => (
+            Status::Interrupted,
+            format!(
+                "{words}\nwhat was drawn before stands, and the same command goes on from there"
+            ),
+        ),
+        Halt::Own(words) => (
+            Status::Own,
+            format!(
+                "this is the program's own fault, not that of your study: {words}\nPlease report it with \
+                 the study that led to it."
+            ),
+        ),
+    }
+}
+
+fn tell_record(fault: &RecordFault) -> Status {
+    tell(&fault.to_string());
+    match fault {
+        RecordFault::Held { .. } => {
+            tell("wait for it to end, or give another folder with --into");
+            Status::Interrupted
+        }
+        RecordFault::Disk(_) => {
+            tell("nothing drawn before is lost; the same command goes on from there");
+            Status::Interrupted
+        }
+        RecordFault::Foreign { .. } => Status::Fault,
+    }
+}
+
+/// Blocks go to the journal, events to the screen.
+struct Desk<'a> {
+    journal: &'a mut JournalFile,
+    progress: Progress,
+}
+
+impl Journal for Desk<'_> {
+    fn standing(&mut self, point: usize, chain: usize) -> Vec<Stood> {
+        self.journal.standing(point, chain)
+    }
+    fn append(&mut self, block: &Finished) -> Result<Mark, String> {
+        self.journal.append(block)
+    }
+    fn sync(&mut self) -> Result<(), String> {
+        self.journal.sync()
+    }
+    fn reader(&self) -> Arc<dyn Reader> {
+        self.journal.reader()
+    }
+}
+
+impl Sink for Desk<'_> {
+    fn event(&mut self, event: &Event) {
+        if let Event::Reviewing { .. } = event {
+            self.journal.sync_soon();
+        }
+        self.progress.event(event);
+    }
+}

@@ -1,0 +1,90 @@
+//! What every command that takes a study begins with.
+
+use super::output::tell;
+use super::registry::FAMILIES;
+use super::status::Status;
+use crate::course::Condition;
+use crate::estimates::Summary;
+use crate::grounds::{Grounds, grounds};
+use crate::place::{Fault, Look, show};
+use crate::plan::Plan;
+use std::io::IsTerminal;
+use std::path::Path;
+
+/// The plan of a study; its faults are told.
+pub fn plan(file: &Path) -> Result<Plan, Status> {
+    let plan = crate::study::resolve(file, &FAMILIES).map_err(|faults| tell_faults(&faults))?;
+    unknown_conditions(&plan)?;
+    Ok(plan)
+}
+
+fn tell_faults(faults: &[Fault]) -> Status {
+    let terminal = std::io::stderr().is_terminal();
+    let look = Look {
+        colour: terminal && !no_colour(),
+        width: None,
+    };
+    let count = match faults.len() {
+        1 => "one fault".to_owned(),
+        count => format!("{count} faults"),
+    };
+    tell(&format!("{}{count}; nothing was run", show(faults, look)));
+    Status::Fault
+}
+
+#[expect(
+    clippy::disallowed_methods,
+    reason = "NO_COLOR is the reader's wish for the screen; no digit sees it"
+)]
+fn no_colour() -> bool {
+    std::env::var_os("NO_COLOR").is_some_and(|value| !value.is_empty())
+}
+
+/// `[grounds] accept` may name conditions only.
+fn unknown_conditions(plan: &Plan) -> Result<(), Status> {
+    let grounds = grounds(&[], None, &plan.accepted);
+    let unknown = grounds.not_conditions();
+    for (name, near) in &unknown {
+        let near = near.map_or(String::new(), |near| format!("; did you mean `{near}`?"));
+        tell(&format!(
+            "[grounds] accept: `{name}` is not a condition{near}"
+        ));
+    }
+    if unknown.is_empty() {
+        Ok(())
+    } else {
+        Err(Status::Fault)
+    }
+}
+
+/// The grounds of a point of a plan, with what its draws add once it has run.
+pub fn grounds_of(plan: &Plan, point: usize, summary: Option<&Summary>) -> Grounds {
+    let conditions = plan.points[point].model.conditions();
+    grounds(&conditions, summary, &plan.accepted)
+}
+
+/// The failed conditions that stop a plan before its first draw, in words.
+pub fn stops(plan: &Plan) -> Vec<String> {
+    let mut words = Vec::new();
+    for point in 0..plan.points.len() {
+        let grounds = grounds_of(plan, point, None);
+        for Condition { name, evidence, .. } in grounds.stops() {
+            let sentence = format!("the condition `{name}` has failed: {evidence}");
+            if !words.contains(&sentence) {
+                words.push(sentence);
+            }
+        }
+    }
+    words
+}
+
+/// Tells why a plan is not run.
+pub fn tell_stops(stops: &[String]) -> Status {
+    for words in stops {
+        tell(words);
+    }
+    tell(
+        "nothing was run; to go on nevertheless, name it in [grounds] accept and say why in `because`",
+    );
+    Status::Missed
+}
