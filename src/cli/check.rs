@@ -16,8 +16,8 @@ const NANOSECONDS: f64 = 1.0;
 
 /// Reads a study and says what would be run.
 pub fn check(file: &Path) -> Status {
-    let plan = match study::plan(file) {
-        Ok(plan) => plan,
+    let plan = match study::read(file) {
+        Ok(read) => read.plan,
         Err(status) => return status,
     };
     if let Err(fault) = say(&words(&plan)) {

@@ -5,11 +5,10 @@ use super::output::{say, tell};
 use super::progress::Progress;
 use super::signals;
 use super::status::Status;
-use super::study;
+use super::study::{self, Read};
 use crate::engine::{
     Event, Finished, Halt, Journal, Mark, Orders, PlanJudge, Reader, Sink, Stood, Task, conduct,
 };
-use crate::plan::Plan;
 use crate::record::{self, Circumstances, Entry, Folder, JournalFile, Open, RecordFault};
 use std::num::NonZeroUsize;
 use std::path::Path;
@@ -46,20 +45,20 @@ fn report(filed: &Filed, json: bool) -> Status {
 }
 
 fn carry_out(file: &Path, into: &Path, threads: Option<NonZeroUsize>) -> Result<Filed, Status> {
-    let plan = study::plan(file)?;
-    let stops = study::stops(&plan);
+    let read = study::read(file)?;
+    let stops = study::stops(&read.plan);
     if !stops.is_empty() {
         return Err(study::tell_stops(&stops));
     }
-    let folder = Folder::of(into, file, &plan.digest());
+    let folder = Folder::of(into, file, &read.plan.digest());
     match folder.enter().map_err(|fault| tell_record(&fault))? {
         Entry::Done(path) => {
             tell("this study was run before; its results are reported from its files");
-            outcome::again(path, &plan).map_err(|fault| tell_record(&fault))
+            outcome::again(path, &read.plan).map_err(|fault| tell_record(&fault))
         }
         Entry::Open(open) => {
             let threads = threads.map_or_else(all_threads, NonZeroUsize::get);
-            work(file, &plan, *open, threads)
+            work(&read, *open, threads)
         }
     }
 }
@@ -73,9 +72,10 @@ fn all_threads() -> usize {
 }
 
 /// Draws until every point has ended, and files what came out.
-fn work(file: &Path, plan: &Plan, mut open: Open, threads: usize) -> Result<Filed, Status> {
+fn work(read: &Read, mut open: Open, threads: usize) -> Result<Filed, Status> {
+    let plan = &read.plan;
     let tasks = Task::all(plan);
-    let ready = prepare(file, plan, &tasks, &open, threads);
+    let ready = prepare(read, &tasks, &open, threads);
     let circumstances = ready.map_err(|fault| tell_record(&fault))?;
     signals::watch();
     let mut desk = Desk {
@@ -110,8 +110,7 @@ fn work(file: &Path, plan: &Plan, mut open: Open, threads: usize) -> Result<File
 
 /// What must stand before the first draw: room, study, inputs, plan, circumstances.
 fn prepare(
-    file: &Path,
-    plan: &Plan,
+    read: &Read,
     tasks: &[Task],
     open: &Open,
     threads: usize,
@@ -126,9 +125,9 @@ fn prepare(
             open.journal.stood
         ));
     }
-    let study = std::fs::read(file).map_err(|fault| RecordFault::disk("read", file, &fault))?;
-    open.write("data/study.toml", &study)?;
-    open.write("data/plan.json", plan.canonical().pretty().as_bytes())?;
+    open.write("data/study.toml", &read.bytes)?;
+    record::keep_inputs(open, &read.plan.inputs)?;
+    open.write("data/plan.json", read.plan.json().pretty().as_bytes())?;
     Circumstances::begin(open, threads)
 }
 
@@ -166,7 +165,7 @@ fn tell_record(fault: &RecordFault) -> Status {
             tell("nothing drawn before is lost; the same command goes on from there");
             Status::Interrupted
         }
-        RecordFault::Foreign { .. } => Status::Fault,
+        RecordFault::Input(_) | RecordFault::Foreign { .. } => Status::Fault,
     }
 }
 

@@ -8,14 +8,30 @@ use crate::estimates::Summary;
 use crate::grounds::{Grounds, grounds};
 use crate::place::{Fault, Look, show};
 use crate::plan::Plan;
+use crate::reading::{self, LARGEST_STUDY};
 use std::io::IsTerminal;
 use std::path::Path;
 
-/// The plan of a study; its faults are told.
-pub fn plan(file: &Path) -> Result<Plan, Status> {
-    let plan = crate::study::resolve(file, &FAMILIES).map_err(|faults| tell_faults(&faults))?;
-    unknown_conditions(&plan)?;
-    Ok(plan)
+/// A study as read: its plan, and its bytes.
+pub struct Read {
+    pub plan: Plan,
+    pub bytes: Vec<u8>,
+}
+
+/// Reads and resolves a study; its faults are told.
+pub fn read(file: &Path) -> Result<Read, Status> {
+    let whole = |what| vec![Fault::whole(what)];
+    let resolved = || -> Result<Read, Vec<Fault>> {
+        let bytes = reading::read(file, LARGEST_STUDY).map_err(whole)?.bytes;
+        let source = reading::text(bytes.clone(), &file.display().to_string());
+        let source = source.map_err(|fault| vec![fault])?;
+        let folder = file.parent().unwrap_or("".as_ref());
+        let plan = crate::study::resolve_text(source, folder, &FAMILIES)?;
+        Ok(Read { plan, bytes })
+    };
+    let read = resolved().map_err(|faults| tell_faults(&faults))?;
+    unknown_conditions(&read.plan)?;
+    Ok(read)
 }
 
 fn tell_faults(faults: &[Fault]) -> Status {

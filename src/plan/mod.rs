@@ -7,6 +7,6 @@ mod types;
 
 pub use block::{block_length, reviews};
 pub use types::{
-    Accepted, BurnIn, Combine, Data, Ensemble, Estimand, EstimandGoal, Give, Goal, Keep, NUMERICS,
-    Numerics, Plan, Point, Streams, SweepAxis,
+    Accepted, BurnIn, Combine, Data, Ensemble, Estimand, EstimandGoal, Give, Goal, Input, Keep,
+    NUMERICS, Numerics, Plan, Point, Streams, SweepAxis,
 };

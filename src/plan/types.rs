@@ -3,6 +3,7 @@
 use crate::canon::Json;
 use crate::course::Model;
 use std::fmt;
+use std::path::PathBuf;
 use std::sync::Arc;
 
 /// Versions of what makes the digits.
@@ -38,6 +39,16 @@ pub struct Plan {
     pub keep: Keep,
     /// Conditions accepted in spite of their standing.
     pub accepted: Accepted,
+    /// The files that the study was resolved with, each once. Where they lie is outside every digest.
+    pub inputs: Vec<Input>,
+}
+
+/// A file that a study names: data or a start.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Input {
+    pub path: PathBuf,
+    /// Lower-case hexadecimal, of the bytes it had.
+    pub sha256: String,
 }
 
 /// A data file by its name in the study and the bytes it had.

@@ -13,6 +13,9 @@ pub enum RecordFault {
     /// The disk, its rights or its room. Work done stays; the run can go on.
     #[error("{0}")]
     Disk(String),
+    /// A file of the study is not what it was.
+    #[error("{0}")]
+    Input(String),
     /// Files that no run of this plan leaves.
     #[error("{}: {words}; move the folder away to begin anew", path.display())]
     Foreign { path: PathBuf, words: String },

@@ -2,8 +2,8 @@
 
 use crate::canon::Json;
 use crate::course::{Family, Request, StartSpec};
-use crate::place::Faults;
-use crate::plan::{Data, Point, block_length};
+use crate::place::{Faults, Text};
+use crate::plan::{Data, Input, Point, block_length};
 use crate::reading::{self, Section, Table, Tree};
 use crate::study::estimand::{self, identifier, printed};
 use crate::study::{ensemble, goal};
@@ -17,6 +17,8 @@ pub(super) struct Surroundings<'a> {
     registry: &'a [&'a dyn Family],
     /// Data files read so far: a sweep rarely touches them.
     read: Vec<(String, Arc<Tree>, Option<(Data, Arc<Table>)>)>,
+    /// Files read, each once.
+    pub inputs: Vec<Input>,
 }
 
 impl<'a> Surroundings<'a> {
@@ -25,6 +27,17 @@ impl<'a> Surroundings<'a> {
             folder,
             registry,
             read: Vec::new(),
+            inputs: Vec::new(),
+        }
+    }
+
+    fn enter(&mut self, path: &Text, sha256: &str) {
+        let input = Input {
+            path: self.folder.join(&path.text),
+            sha256: sha256.to_string(),
+        };
+        if !self.inputs.contains(&input) {
+            self.inputs.push(input);
         }
     }
 
@@ -41,6 +54,9 @@ impl<'a> Surroundings<'a> {
             return Some(found.clone());
         }
         let table = reading::data(name, section, self.folder, faults);
+        if let (Some(table), Some(path)) = (&table, section.text("file", faults)) {
+            self.enter(&path, &table.sha256);
+        }
         let found = table.map(|table| (described(&table, section), Arc::new(table)));
         self.read
             .push((name.to_string(), tree.clone(), found.clone()));
@@ -57,6 +73,9 @@ pub(super) fn resolve_point(
 ) -> Option<Point> {
     let (data, tables) = tables(root, surroundings, faults);
     let (ensemble, start) = ensemble::read(root, surroundings.folder, faults);
+    if let Some(StartSpec::File { path, table }) = &start {
+        surroundings.enter(path, &table.sha256);
+    }
     let (specs, mut estimands): (Vec<_>, Vec<_>) = estimand::read(root, faults).into_iter().unzip();
     let implied = estimands.iter().any(|e| e.goal.is_some());
     let goal = goal::read(root, &ensemble, start.is_some(), implied, faults);

@@ -71,6 +71,7 @@ pub fn resolve_text(
         points,
         keep: frame.keep,
         accepted: frame.accepted,
+        inputs: surroundings.inputs,
     })
 }
 
