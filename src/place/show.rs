@@ -149,7 +149,7 @@ fn excerpt<'a>(group: Group<'a>, cluster: &[Mark<'a>]) -> Group<'a> {
         whole &= shown.len() == written.len();
         for (mark, span) in here.iter().zip(spans) {
             let at = |offset: usize| {
-                let moved = offset.checked_sub(shift.dropped).unwrap_or(0) + shift.added;
+                let moved = offset.saturating_sub(shift.dropped) + shift.added;
                 text.len() + moved.min(shown.len())
             };
             let label = (!mark.label.is_empty()).then_some(mark.label);

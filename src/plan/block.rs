@@ -6,7 +6,7 @@ use crate::plan::{Ensemble, Goal};
 /// operation, a tenth of a second).
 const OPERATIONS: f64 = 1e8;
 const SHORTEST: u64 = 100;
-const LONGEST: u64 = 100_000;
+const LONGEST: u64 = SHORTEST << 10;
 /// Blocks at least, up to the first review, so that a run interrupted before it loses little.
 const BEFORE_FIRST_REVIEW: u64 = 8;
 /// A saved state may be this part of the bytes of the draws beside it.
@@ -15,9 +15,10 @@ const STATE_PART: f64 = 1.0 / 16.0;
 /// Draws in a block, for a draw of `cost` operations and `quantities` recorded values, a saved state of
 /// `state_size` bytes, and a first review after `draws` draws.
 ///
-/// The tenth of a second decides, within 100 to 100,000 draws; then at least 8 blocks up to the first
-/// review, where blocks of 100 draws allow it; then long enough that states take little room beside draws,
-/// as far as one block up to the first review.
+/// The tenth of a second decides, within 100 to 102,400 draws; then at least 8 blocks up to the first
+/// review, where blocks of 100 draws allow it; then long enough that states take little room beside draws.
+/// It is 100 times a power of two, so that small changes of a study leave its blocks as they are, but never
+/// more than the draws up to the first review.
 pub fn block_length(cost: f64, quantities: usize, state_size: usize, draws: u64) -> u64 {
     let by_cost = OPERATIONS / if cost > 1.0 { cost } else { 1.0 };
     let mut length = whole(by_cost).clamp(SHORTEST, LONGEST);
@@ -26,7 +27,8 @@ pub fn block_length(cost: f64, quantities: usize, state_size: usize, draws: u64)
     let draw_bytes = 8.0 * quantities.max(1) as f64;
     let by_state = whole(state_size as f64 / (draw_bytes * STATE_PART)).min(LONGEST);
     length = length.max(by_state);
-    length.min(draws).max(1)
+    let doublings = (length / SHORTEST).ilog2();
+    (SHORTEST << doublings).min(draws).max(1)
 }
 
 fn whole(x: f64) -> u64 {
@@ -55,4 +57,77 @@ pub fn reviews(ensemble: &Ensemble, goal: Option<&Goal>, block: u64) -> Vec<u64>
         reviews.push(at);
     }
     reviews
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::plan::BurnIn;
+    use proptest::prelude::*;
+
+    #[test]
+    fn blocks_of_a_tenth_of_a_second() {
+        // A draw of 10 µs and a first review far off: the cost decides.
+        assert_eq!(block_length(1e4, 10, 200, 1_000_000), 6400);
+        // Cheap draws: the longest block; the first review after 8 blocks.
+        assert_eq!(block_length(100.0, 10, 200, 10_000_000), 102_400);
+        assert_eq!(block_length(100.0, 10, 200, 4000), 400);
+        // Dear draws: the shortest, and never more than are asked for.
+        assert_eq!(block_length(1e9, 10, 200, 4000), 100);
+        assert_eq!(block_length(1e9, 10, 200, 30), 30);
+        // A large state beside few quantities: longer, so that states do not fill the disk.
+        assert_eq!(block_length(1e9, 1, 8000, 100_000), 12_800);
+        assert_eq!(block_length(f64::NAN, 0, 0, 4000), 400);
+        assert_eq!(block_length(f64::INFINITY, 0, usize::MAX, 1), 1);
+    }
+
+    fn ensemble(draws: u64) -> Ensemble {
+        Ensemble {
+            chains: 1,
+            burn_in: BurnIn::Fixed(0),
+            draws,
+            every: 1,
+        }
+    }
+
+    fn goal(at_most: u64) -> Goal {
+        Goal {
+            error: None,
+            r_hat: 1.01,
+            effective: 100.0,
+            at_most,
+        }
+    }
+
+    #[test]
+    fn reviews_grow_by_half() {
+        assert_eq!(reviews(&ensemble(2000), None, 250), [2000]);
+        assert_eq!(
+            reviews(&ensemble(2000), Some(&goal(12_000)), 250),
+            [2000, 3000, 4500, 6750, 10_250, 12_000]
+        );
+        assert_eq!(reviews(&ensemble(2000), Some(&goal(2000)), 250), [2000]);
+    }
+
+    proptest! {
+        #[test]
+        fn any_plan_has_sane_blocks_and_reviews(
+            cost in prop::num::f64::ANY,
+            quantities in 0_usize..10_000,
+            state in 0_usize..1_000_000_000,
+            draws in 1_u64..1 << 53,
+            more in 0_u64..1 << 53,
+        ) {
+            let block = block_length(cost, quantities, state, draws);
+            prop_assert!(1 <= block && block <= LONGEST && block <= draws);
+            let reviews = reviews(&ensemble(draws), Some(&goal(draws.saturating_add(more))), block);
+            prop_assert_eq!(reviews[0], draws);
+            prop_assert_eq!(reviews[reviews.len() - 1], draws.saturating_add(more));
+            prop_assert!(reviews.windows(2).all(|pair| pair[0] < pair[1]));
+            prop_assert!(reviews.len() < 150);
+            for review in &reviews[1..reviews.len().max(2) - 1] {
+                prop_assert_eq!(review % block, 0);
+            }
+        }
+    }
 }

@@ -147,24 +147,22 @@ impl<'a> Loader<'a> {
                 );
             }
         }
-        if let [only] = &self.header[..] {
-            if let Some(other) = only.text.find([';', '\t', '|']) {
-                sound = false;
-                let at = only.span.start + other;
-                faults.push(
-                    Fault::at(
-                        self.place(at..at + 1),
-                        format!(
-                            "the columns of {} are not separated by commas",
-                            self.source.name
-                        ),
-                    )
-                    .label("separated by this?")
-                    .help(
-                        "save the file with commas between the columns, and points in the numbers",
+        if let [only] = &self.header[..]
+            && let Some(other) = only.text.find([';', '\t', '|'])
+        {
+            sound = false;
+            let at = only.span.start + other;
+            faults.push(
+                Fault::at(
+                    self.place(at..at + 1),
+                    format!(
+                        "the columns of {} are not separated by commas",
+                        self.source.name
                     ),
-                );
-            }
+                )
+                .label("separated by this?")
+                .help("save the file with commas between the columns, and points in the numbers"),
+            );
         }
         sound.then_some(())
     }
@@ -500,3 +498,6 @@ fn glob(pattern: &str, name: &str) -> bool {
     }
     rest.ends_with(last)
 }
+
+#[cfg(test)]
+mod tests;

@@ -11,6 +11,9 @@ mod string;
 mod table;
 mod value;
 
+#[cfg(test)]
+mod tests;
+
 pub use data::{data, table};
 pub use file::{Bytes, LARGEST_DATA, LARGEST_STUDY, read, text};
 pub use load::{How, Missing, load};

@@ -16,9 +16,16 @@ pub(super) struct Surroundings<'a> {
     folder: &'a Path,
     registry: &'a [&'a dyn Family],
     /// Data files read so far: a sweep rarely touches them.
-    read: Vec<(String, Arc<Tree>, Option<(Data, Arc<Table>)>)>,
+    read: Vec<Read>,
     /// Files read, each once.
     pub inputs: Vec<Input>,
+}
+
+/// A section `[data.NAME]` with what came of it.
+struct Read {
+    name: String,
+    section: Arc<Tree>,
+    found: Option<(Data, Arc<Table>)>,
 }
 
 impl<'a> Surroundings<'a> {
@@ -49,17 +56,21 @@ impl<'a> Surroundings<'a> {
         faults: &mut Faults,
     ) -> Option<(Data, Arc<Table>)> {
         let tree = section.tree();
-        let known = self.read.iter().find(|(n, t, _)| n == name && t == tree);
-        if let Some((_, _, Some(found))) = known {
-            return Some(found.clone());
+        let mut read = self.read.iter();
+        let known = read.find(|read| read.name == name && read.section == *tree);
+        if let Some(found) = known.and_then(|read| read.found.clone()) {
+            return Some(found);
         }
         let table = reading::data(name, section, self.folder, faults);
         if let (Some(table), Some(path)) = (&table, section.text("file", faults)) {
             self.enter(&path, &table.sha256);
         }
         let found = table.map(|table| (described(&table, section), Arc::new(table)));
-        self.read
-            .push((name.to_string(), tree.clone(), found.clone()));
+        self.read.push(Read {
+            name: name.to_string(),
+            section: tree.clone(),
+            found: found.clone(),
+        });
         found
     }
 }
