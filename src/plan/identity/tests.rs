@@ -91,6 +91,7 @@ fn plan() -> Plan {
         points: vec![point(1.0), point(2.0)],
         keep: Keep::Draws,
         accepted: Accepted::default(),
+        inputs: Vec::new(),
     }
 }
 
