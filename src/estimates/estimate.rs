@@ -204,7 +204,7 @@ fn estimate_number(e: &mut Estimate, chains: &[&[f64]]) {
             }
         } else if tails.is_none_or(|index| index <= 0.25) && !e.chains_disagree() {
             // Beyond 1/4 the fourth moment does not exist.
-            e.sd_mcse = error_of_sd(scaled, centre, draws);
+            e.sd_mcse = error_of_sd(&scaled, centre, draws);
         }
     }
     errors_of_quantiles(e, chains, sorted);
@@ -269,19 +269,18 @@ pub(super) fn set_error(
 }
 
 /// The error of the standard deviation by the delta method on the squared distances from the mean.
-pub(super) fn error_of_sd(scaled: Scaled, centre: f64, draws: usize) -> Option<f64> {
-    let unit = scaled.length(1.0);
-    let mut distances = scaled.values;
-    for y in &mut distances {
-        let d = *y - centre;
-        *y = d * d;
-    }
+pub(super) fn error_of_sd(scaled: &Scaled, centre: f64, draws: usize) -> Option<f64> {
+    let distances: Vec<f64> = scaled
+        .values
+        .iter()
+        .map(|y| (y - centre) * (y - centre))
+        .collect();
     let effective = effective_flat(&distances, draws)?;
     let total = distances.len() as f64;
     let second = mean(&distances);
     let spread = squares(&distances, second) / total;
     let sd = (second * total / (total - 1.0)).sqrt();
-    Some((spread / effective.size).sqrt() / (2.0 * sd) * unit)
+    Some(scaled.length((spread / effective.size).sqrt() / (2.0 * sd)))
 }
 
 /// The lesser of the effective sizes at 5 % and 95 %.

@@ -34,6 +34,8 @@ mod stray;
 mod summary;
 mod tail;
 mod transform;
+#[cfg(test)]
+mod truth;
 
 pub use batch::{batch_count, pooled_batch_variance};
 pub use effective::{Effective, effective};

@@ -60,7 +60,12 @@ pub(super) fn quantile_error(sorted: &[f64], level: f64, effective: f64) -> Opti
     };
     let lower = at((beta_quantile(a, b, low) * count).floor());
     let upper = at((beta_quantile(a, b, high) * count).ceil());
-    let error = (upper - lower) / 2.0;
+    let (width, halves) = (upper - lower, upper / 2.0 - lower / 2.0);
+    let error = if width.is_finite() {
+        width / 2.0
+    } else {
+        halves
+    };
     error.is_finite().then_some(error)
 }
 

@@ -149,7 +149,7 @@ fn monte_carlo_errors() {
         );
         near(
             "mcse_sd_delta",
-            super::estimate::error_of_sd(scaled, centre, 400).expect("varies"),
+            super::estimate::error_of_sd(&scaled, centre, 400).expect("varies"),
         );
         let ordered = Ordered::new(&chains);
         for (label, level) in [("05", 0.05), ("50", 0.5), ("95", 0.95)] {
