@@ -1,0 +1,204 @@
+//! The command line on the real binary: exit statuses, what goes to which stream, and doing it again.
+
+mod common;
+
+use common::{odograph, text};
+use std::fs;
+use std::path::Path;
+use std::process::Output;
+
+const STUDY: &str = r#"
+title = "One unknown"
+question = "What does a run say, and where?"
+[seeds]
+root = "command"
+[model]
+family = "density"
+[model.unknown]
+a = { law = "normal(mean = 0, sd = 1)" }
+[sampler]
+method = "metropolis"
+[ensemble]
+chains = 4
+burn_in = 200
+draws = 1000
+"#;
+
+fn with(content: &str, arguments: &[&str]) -> (tempfile::TempDir, Output) {
+    let folder = tempfile::tempdir().unwrap();
+    fs::write(folder.path().join("one.toml"), content).unwrap();
+    let output = odograph(folder.path(), arguments);
+    (folder, output)
+}
+
+fn status(output: &Output) -> i32 {
+    output.status.code().expect("no signal")
+}
+
+fn open_folders(folder: &Path) -> usize {
+    fs::read_dir(folder.join("results/one")).map_or(0, Iterator::count)
+}
+
+#[test]
+fn done_is_0_and_done_again_is_reported_from_the_files() {
+    let (folder, first) = with(STUDY, &["run", "one.toml"]);
+    assert_eq!(status(&first), 0, "{}", text(&first.stderr));
+    let said = text(&first.stdout);
+    for part in [
+        "One unknown",
+        "What does a run say",
+        "Grounds",
+        "Files: results",
+    ] {
+        assert!(said.contains(part), "{part} is missing in:\n{said}");
+    }
+    let again = odograph(folder.path(), &["run", "one.toml", "--threads", "3"]);
+    assert_eq!(status(&again), 0);
+    assert_eq!(text(&again.stdout), said);
+    assert!(text(&again.stderr).contains("was run before"));
+    // A comment is not another study; another root is.
+    let commented = format!("# a remark\n{STUDY}");
+    fs::write(folder.path().join("one.toml"), commented).unwrap();
+    let commented = odograph(folder.path(), &["run", "one.toml"]);
+    assert_eq!(text(&commented.stdout), said);
+    let other = STUDY.replace("\"command\"", "\"another\"");
+    fs::write(folder.path().join("one.toml"), other).unwrap();
+    let other = odograph(folder.path(), &["run", "one.toml"]);
+    assert_eq!(status(&other), 0);
+    assert_ne!(text(&other.stdout), said);
+    assert_eq!(open_folders(folder.path()), 2);
+}
+
+#[test]
+fn json_goes_to_stdout_and_messages_to_stderr() {
+    let (folder, output) = with(STUDY, &["run", "one.toml", "--json"]);
+    let json: serde_json::Value = serde_json::from_slice(&output.stdout).expect("JSON alone");
+    assert_eq!(json["schema"], 1);
+    assert_eq!(json["points"][0]["draws_per_chain"], 1000);
+    assert_eq!(json["points"][0]["burn_in"], 200);
+    let again = odograph(folder.path(), &["run", "one.toml", "--json"]);
+    assert_eq!(again.stdout, output.stdout);
+}
+
+#[test]
+fn faults_of_a_study_are_1_and_all_are_told() {
+    let broken = STUDY
+        .replace("family", "famly")
+        .replace("chains = 4", "chains = 0");
+    for command in ["run", "check"] {
+        let (folder, output) = with(&broken, &[command, "one.toml"]);
+        assert_eq!(status(&output), 1);
+        assert_eq!(text(&output.stdout), "");
+        let said = text(&output.stderr);
+        for part in ["one.toml", "famly", "chains", "nothing was run"] {
+            assert!(said.contains(part), "{part} is missing in:\n{said}");
+        }
+        assert_eq!(open_folders(folder.path()), 0);
+    }
+    let (_folder, output) = with(STUDY, &["run", "two.toml"]);
+    assert_eq!(status(&output), 1, "{}", text(&output.stderr));
+    let accepted = format!("{STUDY}[grounds]\naccept = [\"irreducable\"]\nbecause = \"x\"\n");
+    let (_folder, output) = with(&accepted, &["run", "one.toml"]);
+    assert_eq!(status(&output), 1, "{}", text(&output.stderr));
+    assert!(text(&output.stderr).contains("did you mean `irreducible`"));
+}
+
+#[test]
+fn a_command_line_that_cannot_be_understood_is_2() {
+    for arguments in [
+        &["walk", "one.toml"][..],
+        &["run"],
+        &["run", "one.toml", "--threads", "0"],
+        &["run", "one.toml", "--treads", "2"],
+        &["catalogue", "recipes"],
+        &[],
+    ] {
+        let (_folder, output) = with(STUDY, arguments);
+        assert_eq!(status(&output), 2, "{arguments:?}");
+    }
+    let (_folder, output) = with(STUDY, &["--help"]);
+    assert_eq!(status(&output), 0);
+}
+
+#[test]
+fn a_missed_goal_is_3_also_when_reported_again() {
+    let goal = "[goal]\nerror = 0.0001\nat_most = 1500\n";
+    let (folder, output) = with(&format!("{STUDY}{goal}"), &["run", "one.toml"]);
+    assert_eq!(status(&output), 3, "{}", text(&output.stderr));
+    assert!(text(&output.stdout).contains("MISSED"));
+    let again = odograph(folder.path(), &["run", "one.toml"]);
+    assert_eq!(status(&again), 3);
+}
+
+#[test]
+fn check_says_what_would_be_run_and_draws_nothing() {
+    let (folder, output) = with(STUDY, &["check", "one.toml"]);
+    assert_eq!(status(&output), 0);
+    let said = text(&output.stdout);
+    for part in [
+        "4 chains of 1000 draws",
+        "burn-in of 200",
+        "on disk",
+        "Grounds before any draw",
+    ] {
+        assert!(said.contains(part), "{part} is missing in:\n{said}");
+    }
+    assert!(!folder.path().join("results").exists());
+}
+
+#[test]
+fn a_folder_that_cannot_be_written_is_5() {
+    let folder = tempfile::tempdir().unwrap();
+    fs::write(folder.path().join("one.toml"), STUDY).unwrap();
+    fs::write(folder.path().join("taken"), "a file").unwrap();
+    let output = odograph(folder.path(), &["run", "one.toml", "--into", "taken"]);
+    assert_eq!(status(&output), 5);
+    assert!(
+        text(&output.stderr).contains("taken/one"),
+        "{}",
+        text(&output.stderr)
+    );
+}
+
+#[test]
+fn a_journal_of_other_hands_is_refused() {
+    let (folder, _) = with(STUDY, &["check", "one.toml"]);
+    let plan = text(&odograph(folder.path(), &["check", "one.toml"]).stdout);
+    let digest = plan
+        .lines()
+        .find_map(|line| line.strip_prefix("Plan "))
+        .unwrap();
+    let open = folder
+        .path()
+        .join(format!("results/one/{}.open", &digest[..12]));
+    fs::create_dir_all(&open).unwrap();
+    fs::write(open.join("journal"), vec![b'x'; 1000]).unwrap();
+    let output = odograph(folder.path(), &["run", "one.toml"]);
+    assert_eq!(status(&output), 1);
+    assert!(text(&output.stderr).contains("not the journal of this plan"));
+}
+
+#[test]
+fn the_catalogue_lists_what_the_tables_hold() {
+    let (_folder, output) = with(STUDY, &["catalogue"]);
+    let said = text(&output.stdout);
+    for law in odograph::laws::table() {
+        assert!(
+            said.contains(&format!("  {}(", law.name())),
+            "{}",
+            law.name()
+        );
+    }
+    for function in odograph::formula::functions() {
+        assert!(said.contains(function.usage), "{}", function.usage);
+    }
+    for method in odograph::methods::table() {
+        assert!(
+            said.contains(&format!("  {}\n", method.name)),
+            "{}",
+            method.name
+        );
+    }
+    let (_folder, output) = with(STUDY, &["catalogue", "methods"]);
+    assert!(!text(&output.stdout).contains("Laws"));
+}
