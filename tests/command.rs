@@ -83,14 +83,14 @@ fn json_goes_to_stdout_and_messages_to_stderr() {
 #[test]
 fn faults_of_a_study_are_1_and_all_are_told() {
     let broken = STUDY
-        .replace("family", "famly")
+        .replace("draws = ", "drawz = ")
         .replace("chains = 4", "chains = 0");
     for command in ["run", "check"] {
         let (folder, output) = with(&broken, &[command, "one.toml"]);
         assert_eq!(status(&output), 1);
         assert_eq!(text(&output.stdout), "");
         let said = text(&output.stderr);
-        for part in ["one.toml", "famly", "chains", "nothing was run"] {
+        for part in ["one.toml", "drawz", "chains", "nothing was run"] {
             assert!(said.contains(part), "{part} is missing in:\n{said}");
         }
         assert_eq!(open_folders(folder.path()), 0);
