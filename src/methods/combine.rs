@@ -40,6 +40,38 @@ impl Kernel for Cycle {
     }
 }
 
+/// A kernel several times in a row.
+pub struct Repeat {
+    kernel: Box<dyn Kernel>,
+    times: u64,
+}
+
+impl Repeat {
+    pub fn new(kernel: Box<dyn Kernel>, times: u64) -> Repeat {
+        Repeat { kernel, times }
+    }
+}
+
+impl Kernel for Repeat {
+    fn step(&mut self, target: &mut dyn Target, walkers: &mut Walkers, phase: Phase) {
+        for _ in 0..self.times {
+            self.kernel.step(target, walkers, phase);
+        }
+    }
+
+    fn save(&self, lane: usize, state: &mut State) {
+        self.kernel.save(lane, state);
+    }
+
+    fn load(&mut self, lane: usize, state: &mut Reader) -> Result<(), String> {
+        self.kernel.load(lane, state)
+    }
+
+    fn notes(&self, lane: usize) -> Vec<(String, f64)> {
+        self.kernel.notes(lane)
+    }
+}
+
 /// One kernel a step, drawn from each chain's own stream.
 pub struct Mixture {
     parts: Vec<(String, Box<dyn Kernel>)>,

@@ -1,7 +1,7 @@
 //! Integer coordinates of finite range, one after the other, each drawn from its full conditional (Geman &
 //! Geman 1984): every value is evaluated, and one is drawn by inversion.
 
-use super::declaration::Method;
+use super::declaration::{Method, TIMES};
 use super::kernel::Kernel;
 use super::saved::Reader;
 use super::walkers::Walkers;
@@ -15,7 +15,7 @@ pub const DECLARATION: Method = Method {
     reference: "Geman & Geman 1984.",
     real: false,
     integer: true,
-    options: &[],
+    options: &[TIMES],
 };
 
 /// The longest range that is gone through for one draw.

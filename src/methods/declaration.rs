@@ -27,6 +27,13 @@ pub struct Choice {
     pub default: &'static str,
 }
 
+/// The option of every method.
+pub const TIMES: Choice = Choice {
+    name: "times",
+    meaning: "how often the step is made for one draw",
+    default: "1",
+};
+
 /// All methods, in order of name.
 pub fn table() -> &'static [Method] {
     const TABLE: &[Method] = &[

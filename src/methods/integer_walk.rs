@@ -4,11 +4,10 @@
 
 use super::gain::AdaptiveScale;
 use super::kernel::Kernel;
-use super::numbers;
 use super::saved::Reader;
 use super::walkers::Walkers;
 use crate::course::{Phase, State, Target};
-use crate::maths;
+use crate::{maths, random};
 
 /// Beyond this not every whole number is a double.
 const LARGEST: f64 = 9007199254740992.0;
@@ -75,9 +74,9 @@ impl IntegerWalk {
             }
             let stream = &mut walkers.streams[lane];
             let scale = self.scales[index * lanes + lane].value();
-            let distance = 1.0 + (scale * numbers::exponential(stream)).floor();
+            let distance = 1.0 + (scale * random::exponential(stream)).floor();
             let down = stream.word() >> 63 == 1;
-            let patience = numbers::exponential(stream);
+            let patience = random::exponential(stream);
             let trial = walkers.position[at] + if down { -distance } else { distance };
             if trial >= lower && trial <= upper {
                 self.trial[at] = trial;

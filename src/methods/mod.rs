@@ -12,7 +12,6 @@ mod gain;
 mod integer_walk;
 mod kernel;
 mod lockstep;
-mod numbers;
 mod random_walk;
 mod read;
 mod sampler;
@@ -20,7 +19,7 @@ mod saved;
 mod slice;
 mod walkers;
 
-pub use combine::{Cycle, Mixture};
+pub use combine::{Cycle, Mixture, Repeat};
 pub use conditional::Conditional;
 pub use declaration::{Choice, Method, find, table};
 pub use integer_walk::IntegerWalk;

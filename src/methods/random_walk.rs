@@ -5,15 +5,14 @@
 //! Cholesky factor of a running covariance (Haario, Saksman & Tamminen 2001); each chain by its own past.
 
 use super::covariance::RunningCovariance;
-use super::declaration::{Choice, Method};
+use super::declaration::{Choice, Method, TIMES};
 use super::gain::AdaptiveScale;
 use super::kernel::Kernel;
 use super::lockstep::{accept_rows, add_steps};
-use super::numbers;
 use super::saved::Reader;
 use super::walkers::Walkers;
 use crate::course::{Phase, State, Target};
-use crate::maths;
+use crate::{maths, random};
 
 pub const DECLARATION: Method = Method {
     name: "metropolis",
@@ -34,6 +33,7 @@ pub const DECLARATION: Method = Method {
             meaning: "what burn-in adapts: \"covariance\" (scale and shape), \"scale\" or \"none\"",
             default: "\"covariance\"",
         },
+        TIMES,
     ],
 };
 
@@ -111,8 +111,8 @@ impl RandomWalk {
             let normals = self.normals.iter_mut().skip(lane).step_by(lanes);
             if walkers.active[lane] {
                 let scale = self.scales[lane].value();
-                normals.for_each(|z| *z = scale * numbers::normal(stream));
-                self.patience[lane] = numbers::exponential(stream);
+                normals.for_each(|z| *z = scale * random::normal(stream));
+                self.patience[lane] = random::exponential(stream);
             } else {
                 normals.for_each(|z| *z = 0.0);
             }

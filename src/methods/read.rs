@@ -25,7 +25,7 @@ pub fn read(
         unknowns,
     };
     let Some(section) = section else {
-        return Some(target.chosen(Vec::new(), Vec::new()));
+        return Some(target.chosen(Vec::new(), (0..coordinates.len()).collect()));
     };
     let before = faults.0.len();
     let steps = section.sections("step", faults);
@@ -66,30 +66,25 @@ impl Unknowns<'_> {
             );
             return None;
         }
-        let moves = self.moves(method, &options?, &on, &place, faults)?;
-        let step = self.step(method.name.into(), None, moves);
+        let options = options?;
+        let moves = self.moves(method, &options, &on, &place, faults)?;
+        let times = options.times.unwrap_or(1);
+        let step = self.step(method.name.into(), None, times, moves);
         Some(self.chosen(vec![step], rest))
     }
 
-    /// Adds steps chosen for the coordinates `rest`, or for all if there is no step yet.
+    /// Adds steps chosen for the coordinates `rest`.
     fn chosen(&self, mut steps: Vec<Step>, rest: Vec<usize>) -> Sampler {
-        let alone = steps.is_empty();
-        let rest = if alone {
-            (0..self.coordinates.len()).collect()
-        } else {
-            rest
-        };
         let mut reasons = Vec::new();
-        for (moves, reason) in choose::choose(self.coordinates, &rest) {
-            let name = moves.settings.method();
-            // Two steps can be of one method (metropolis on integers beside metropolis on the rest).
-            let name = if steps.iter().any(|step| step.name == name) {
-                format!("{name} on integers")
-            } else {
-                name.to_string()
-            };
-            steps.push(self.step(name, None, vec![moves]));
-            reasons.push(reason);
+        for choice in choose::choose(self.coordinates, &rest) {
+            for (part, times) in choice.moves {
+                let mut name = part.settings.method().to_string();
+                if steps.iter().any(|step| step.name == name) {
+                    name += " on integers";
+                }
+                steps.push(self.step(name, None, times, vec![part]));
+            }
+            reasons.push(choice.reason);
         }
         Sampler {
             steps,
@@ -158,8 +153,10 @@ impl Unknowns<'_> {
         let place = table
             .key_place("method")
             .unwrap_or_else(|| table.place().clone());
-        let moves = self.moves(method, &options?, &coordinates, &place, faults)?;
-        Some(self.step(name?.text, weight, moves))
+        let options = options?;
+        let moves = self.moves(method, &options, &coordinates, &place, faults)?;
+        let times = options.times.unwrap_or(1);
+        Some(self.step(name?.text, weight, times, moves))
     }
 
     /// The unknowns of `on`, by index, with the place of each.
@@ -287,7 +284,7 @@ impl Unknowns<'_> {
         None
     }
 
-    fn step(&self, name: String, weight: Option<f64>, moves: Vec<Move>) -> Step {
+    fn step(&self, name: String, weight: Option<f64>, times: u64, moves: Vec<Move>) -> Step {
         let coordinates = moves.iter().flat_map(|m| &m.coordinates);
         let on: BTreeSet<usize> = coordinates.map(|&c| self.coordinates[c].unknown).collect();
         Step {
@@ -297,6 +294,7 @@ impl Unknowns<'_> {
                 .map(|unknown| self.unknowns[unknown].clone())
                 .collect(),
             weight,
+            times,
             moves,
         }
     }
@@ -373,6 +371,7 @@ struct Options {
     adapt: Option<Adapt>,
     width: Option<f64>,
     limit: Option<u64>,
+    times: Option<u64>,
 }
 
 fn method(section: &Section, faults: &mut Faults) -> Option<&'static Method> {
@@ -416,6 +415,7 @@ fn options(section: &Section, method: &Method, faults: &mut Faults) -> Option<Op
         adapt: None,
         width: None,
         limit: None,
+        times: section.count("times", 1..=1_000_000, faults),
     };
     if own("scale") {
         read.scale = section.positive("scale", faults);

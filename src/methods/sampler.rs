@@ -1,6 +1,6 @@
 //! A sampler, resolved: which method moves which coordinates, with every setting said.
 
-use super::combine::{Cycle, Mixture};
+use super::combine::{Cycle, Mixture, Repeat};
 use super::conditional::Conditional;
 use super::integer_walk::IntegerWalk;
 use super::kernel::Kernel;
@@ -37,8 +37,10 @@ pub struct Step {
     pub name: String,
     /// The unknowns moved, in the target's order.
     pub on: Vec<String>,
-    /// Chance in a mixture; `None` in a cycle.
+    /// Relative chance in a mixture; `None` in a cycle.
     pub weight: Option<f64>,
+    /// How often the moves are made for one draw.
+    pub times: u64,
     pub moves: Vec<Move>,
 }
 
@@ -67,12 +69,13 @@ impl Sampler {
     }
 
     fn step_kernel(&self, step: &Step, lanes: usize) -> Box<dyn Kernel> {
-        one_or_cycle(
-            step.moves
-                .iter()
-                .map(|part| (part.settings.method().to_string(), self.build(part, lanes)))
-                .collect(),
-        )
+        let build = |part: &Move| (part.settings.method().to_string(), self.build(part, lanes));
+        let once = one_or_cycle(step.moves.iter().map(build).collect());
+        if step.times == 1 {
+            once
+        } else {
+            Box::new(Repeat::new(once, step.times))
+        }
     }
 
     fn build(&self, part: &Move, lanes: usize) -> Box<dyn Kernel> {
@@ -116,7 +119,7 @@ impl Sampler {
         self.steps
             .iter()
             .map(|step| {
-                let share = step.weight.map_or(1.0, |w| w / total);
+                let share = step.weight.map_or(1.0, |w| w / total) * step.times as f64;
                 share
                     * step
                         .moves
@@ -180,6 +183,7 @@ impl Sampler {
                 ("name", Json::text(step.name.clone())),
                 ("on", Json::array(step.on.iter().map(Json::text))),
                 ("moves", Json::array(moves)),
+                ("times", Json::Count(step.times)),
             ];
             if let Some(weight) = step.weight {
                 members.push(("weight", Json::real(weight)));

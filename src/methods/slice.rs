@@ -5,13 +5,13 @@
 //!
 //! Lanes go through the coordinates each at its own pace; all are evaluated together until the last is done.
 
-use super::declaration::{Choice, Method};
+use super::declaration::{Choice, Method, TIMES};
 use super::gain::AdaptiveScale;
 use super::kernel::Kernel;
-use super::numbers;
 use super::saved::Reader;
 use super::walkers::Walkers;
 use crate::course::{Phase, State, Target};
+use crate::random;
 
 pub const DECLARATION: Method = Method {
     name: "slice",
@@ -31,6 +31,7 @@ pub const DECLARATION: Method = Method {
             meaning: "most widths that an interval may grow to",
             default: "1000",
         },
+        TIMES,
     ],
 };
 
@@ -115,9 +116,9 @@ impl Slice {
         let width = self.widths[coordinate * walkers.lanes + lane].value();
         let here = walkers.position[self.on[coordinate] * walkers.lanes + lane];
         let stream = &mut walkers.streams[lane];
-        let level = walkers.log_density[lane] - numbers::exponential(stream);
+        let level = walkers.log_density[lane] - random::exponential(stream);
         let left = here - width * stream.unit();
-        let left_steps = numbers::index(stream, self.limit);
+        let left_steps = random::index(stream, self.limit);
         self.lanes[lane] = Lane {
             coordinate,
             stage: Stage::Left,

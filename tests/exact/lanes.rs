@@ -35,6 +35,7 @@ fn sampler(mixture: bool) -> Sampler {
         name: format!("step {number}"),
         on: coordinates.iter().map(|c| format!("x{c}")).collect(),
         weight: mixture.then_some(1.0 + number as f64),
+        times: 1 + number as u64 % 2,
         moves: vec![Move {
             settings,
             coordinates,
