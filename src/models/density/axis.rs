@@ -35,6 +35,9 @@ fn levels(
             .split_once('.')
             .expect("levels are written table.column");
         let table = table(text, of, tables, faults)?;
+        if let ([_], Some(matrix)) = (texts, table.matrix(column)) {
+            return Some(Axis::columns(table, matrix));
+        }
         columns.push((table, column, labels(text, column, table, faults)?));
     }
     match columns.as_slice() {

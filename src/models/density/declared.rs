@@ -9,7 +9,7 @@ use crate::reading::{Content, Section, Value};
 pub enum Per {
     /// One value for each row of a table.
     Rows(Text),
-    /// One value for each level of a column, or for each pair of levels of two.
+    /// One value for each level of a column, for each pair of levels of two, or for each column of a matrix.
     Levels(Vec<Text>),
     Count(usize),
 }
