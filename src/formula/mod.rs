@@ -27,3 +27,6 @@ pub use parser::parse;
 pub use program::{Machine, Program};
 pub use scope::{Entity, Scope, Term};
 pub use shape::{Axis, Kind, Over, Shape};
+
+#[cfg(test)]
+mod tests;

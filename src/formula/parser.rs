@@ -337,7 +337,8 @@ impl Parser<'_> {
                 value.place,
                 "an argument without a name stands after one with a name",
             )
-            .label("needs a name");
+            .label("needs a name")
+            .help("laws take named arguments, functions take none; to compare, write `==`");
             return Err(self.fault(fault));
         }
         arguments.push(value);

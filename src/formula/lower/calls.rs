@@ -24,7 +24,10 @@ impl Lowering<'_> {
                     format!("`{}` takes its arguments by position", call.name),
                 )
                 .label(format!("leave out `{name} =`"))
-                .help(format!("it is called like `{}`", function.usage)),
+                .help(format!(
+                    "it is called like `{}`; to compare, write `==`",
+                    function.usage
+                )),
             );
             return None;
         }

@@ -137,6 +137,10 @@ impl Machine {
                 memory::spread_data(&inputs[at..at + rows], false, out);
                 continue;
             }
+            if lanes == WIDTH {
+                out[..rows * WIDTH].copy_from_slice(&inputs[at * WIDTH..(at + rows) * WIDTH]);
+                continue;
+            }
             for (row, pack) in out.chunks_exact_mut(WIDTH).take(rows).enumerate() {
                 fill(pack, slot(at + row));
             }

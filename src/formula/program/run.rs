@@ -267,41 +267,85 @@ fn fill_up(out: &mut [f64], rows: usize) {
     }
 }
 
-/// Rows of a matrix times the vectors of eight lanes: eight rows at a time, column after column.
+/// Columns taken in one pass over the sums of a tile.
+const STRIDE: usize = 8;
+
+/// Adds the products of `N` columns, in order, to the sums of a tile: a row of `sums` holds eight lanes of one
+/// row of the matrix. Written as stores of eight in a row, which become one register each.
+#[inline(always)]
+fn add_columns<const N: usize>(sums: &mut [[f64; WIDTH]], tiles: &[[f64; 8]], x: &[f64]) {
+    let Some(tiles) = tiles.first_chunk::<N>() else {
+        return;
+    };
+    let x: [[f64; WIDTH]; N] = std::array::from_fn(|column| pack(x, column));
+    for (row, sums) in sums.iter_mut().enumerate() {
+        for lane in 0..WIDTH {
+            let mut sum = sums[lane];
+            for column in 0..N {
+                sum += tiles[column][row] * x[column][lane];
+            }
+            sums[lane] = sum;
+        }
+    }
+}
+
+/// Rows of a matrix times the vectors of eight lanes: eight rows at a time, columns in order.
 #[inline(always)]
 fn dot_wide(matrix: &Tiles, first_tile: usize, x: &[f64], out: &mut [f64]) {
     let columns = matrix.columns;
     for (tile, out) in out.chunks_mut(8 * WIDTH).enumerate() {
         let at = (first_tile + tile) * columns;
-        let mut sums = [[0.0; WIDTH]; 8];
-        for (tile, x) in matrix.tiles[at..at + columns]
-            .iter()
-            .zip(x.chunks_exact(WIDTH))
-        {
-            for row in 0..8 {
-                for lane in 0..WIDTH {
-                    sums[row][lane] += tile[row] * x[lane];
-                }
-            }
+        let tiles = &matrix.tiles[at..at + columns];
+        let (sums, _) = out.as_chunks_mut::<WIDTH>();
+        sums.fill([0.0; WIDTH]);
+        let mut column = 0;
+        while column + STRIDE <= columns {
+            add_columns::<STRIDE>(sums, &tiles[column..], &x[column * WIDTH..]);
+            column += STRIDE;
         }
-        for (out, sum) in out.chunks_exact_mut(WIDTH).zip(&sums) {
-            out.copy_from_slice(sum);
+        while column + 2 <= columns {
+            add_columns::<2>(sums, &tiles[column..], &x[column * WIDTH..]);
+            column += 2;
+        }
+        while column < columns {
+            add_columns::<1>(sums, &tiles[column..], &x[column * WIDTH..]);
+            column += 1;
         }
     }
 }
 
-/// Rows of a matrix times one vector: eight rows a pack, column after column.
+/// The same for one vector: eight rows of the matrix side by side.
+#[inline(always)]
+fn add_columns_narrow<const N: usize>(sums: &mut [f64; WIDTH], tiles: &[[f64; 8]], x: &[f64]) {
+    let (Some(tiles), Some(x)) = (tiles.first_chunk::<N>(), x.first_chunk::<N>()) else {
+        return;
+    };
+    for row in 0..WIDTH {
+        let mut sum = sums[row];
+        for column in 0..N {
+            sum += tiles[column][row] * x[column];
+        }
+        sums[row] = sum;
+    }
+}
+
+/// Rows of a matrix times one vector: eight rows a pack, columns in order.
 #[inline(always)]
 fn dot_narrow(matrix: &Tiles, first_tile: usize, x: &[f64], out: &mut [f64]) {
     let columns = matrix.columns;
-    for (tile, out) in out.chunks_exact_mut(WIDTH).enumerate() {
+    let (out, _) = out.as_chunks_mut::<WIDTH>();
+    for (tile, sums) in out.iter_mut().enumerate() {
         let at = (first_tile + tile) * columns;
-        let mut sums = [0.0; WIDTH];
-        for (tile, x) in matrix.tiles[at..at + columns].iter().zip(x) {
-            for row in 0..WIDTH {
-                sums[row] += tile[row] * x;
-            }
+        let tiles = &matrix.tiles[at..at + columns];
+        *sums = [0.0; WIDTH];
+        let mut column = 0;
+        while column + STRIDE <= columns {
+            add_columns_narrow::<STRIDE>(sums, &tiles[column..], &x[column..]);
+            column += STRIDE;
         }
-        out.copy_from_slice(&sums);
+        while column < columns {
+            add_columns_narrow::<1>(sums, &tiles[column..], &x[column..]);
+            column += 1;
+        }
     }
 }

@@ -3,8 +3,9 @@
 use super::super::graph::{Graph, Node, Reduction, dot_rows, element};
 use super::super::shape::{Axis, Over, Shape};
 use super::Program;
-use crate::laws::{Algebra, Value};
-use crate::maths::{Binary, Ternary, Unary};
+use crate::laws::{self, Algebra, Domain, Value};
+use crate::maths::{self, Binary, Ternary, Unary};
+use crate::random::{Purpose, Stream};
 use proptest::prelude::*;
 use std::sync::Arc;
 
@@ -165,6 +166,146 @@ fn random(rows: usize, choices: &[(u8, u16, u16, u16)]) -> (Graph, Vec<Value>) {
     }
     let outputs = made.split_off(7);
     (g, outputs)
+}
+
+/// Values of a parameter inside and outside its domain.
+fn choices(domain: Domain) -> (&'static [f64], &'static [f64]) {
+    match domain {
+        Domain::Real => (&[0.3, -1.2, 2.5], &[f64::NAN]),
+        Domain::Positive | Domain::NonNegative => {
+            (&[0.7, 1.9, 3.2], &[-1.0, f64::NAN, f64::INFINITY])
+        }
+        Domain::Unit | Domain::PositiveUnit => (&[0.35, 0.6, 0.9], &[-0.5, 1.5, f64::NAN]),
+        Domain::Count => (&[6.0, 9.0, 4.0], &[2.5, -1.0, f64::NAN]),
+        Domain::Probabilities => (&[0.2, 0.3, 0.5], &[-0.2]),
+    }
+}
+
+/// The sum of log densities as the graph simplifies it, against the law row by row.
+#[test]
+fn sums_of_log_densities_keep_their_meaning_and_their_guards() {
+    const ROWS: usize = 11;
+    let mut stream = Stream::new(&[7; 32], Purpose::Test);
+    for law in laws::table() {
+        let forms: Vec<(Domain, usize)> = law
+            .parameters()
+            .iter()
+            .map(|p| {
+                (
+                    p.domain,
+                    if p.domain == Domain::Probabilities {
+                        3
+                    } else {
+                        1
+                    },
+                )
+            })
+            .collect();
+        let domains: Vec<Domain> = forms.iter().flat_map(|&(d, n)| vec![d; n]).collect();
+        let bounds = law.name() == "uniform";
+        let good = |at: usize, which: usize| match domains[at] {
+            Domain::Probabilities => choices(domains[at]).0[at % 3],
+            _ if bounds => [-3.0, 4.0][at] + 0.1 * which as f64,
+            domain => choices(domain).0[which],
+        };
+        let base: Vec<f64> = (0..domains.len()).map(|at| good(at, 0)).collect();
+        let mut x: Vec<f64> = (0..ROWS)
+            .map(|i| law.at(&base).draw(&mut stream).unwrap_or(0.4 + i as f64))
+            .collect();
+        for arrangement in 0..6 {
+            if arrangement == 5 {
+                x[ROWS / 2] = -3.5;
+            }
+            let mut g = Graph::new();
+            let (long, short) = (axis("long", ROWS), axis("short", 3));
+            let level: Vec<usize> = (0..ROWS).map(|i| i * 7 % 3).collect();
+            let index = g.data(
+                long.clone(),
+                level.iter().map(|&l| (l + 1) as f64).collect(),
+            );
+            let point = if arrangement == 2 {
+                g.input(Shape::Vector(long.clone()))
+            } else {
+                g.data(long.clone(), x.clone().into())
+            };
+            // How each parameter is made, and its inputs for the three choices.
+            let mut parameters = Vec::new();
+            for &domain in &domains {
+                let exp = arrangement == 3 && domain == Domain::Positive;
+                let vector = matches!(arrangement, 1 | 3) && domain != Domain::Probabilities;
+                let shape = if vector {
+                    Shape::Vector(short.clone())
+                } else {
+                    Shape::Number
+                };
+                let mut v = g.input(shape);
+                if exp {
+                    v = g.unary(Unary::Exp, v);
+                }
+                if vector {
+                    v = g.gather(v, index);
+                }
+                parameters.push((v, vector, exp));
+            }
+            let values: Vec<Value> = parameters.iter().map(|p| p.0).collect();
+            let density = law.log_density(&mut g, point, &values);
+            let total = g.sum(density);
+            let mut machine = Program::compile(&g, &[total]).machine(1);
+            let mut trials: Vec<Option<(usize, f64)>> = vec![None];
+            for (at, &domain) in domains.iter().enumerate() {
+                trials.extend(choices(domain).1.iter().map(|&bad| Some((at, bad))));
+            }
+            for trial in trials {
+                let value = |at: usize, which: usize| match trial {
+                    Some((bad, x)) if bad == at && (which == 1 || !parameters[at].1) => x,
+                    _ => good(at, if parameters[at].1 { which } else { 0 }),
+                };
+                let mut inputs = if arrangement == 2 {
+                    x.clone()
+                } else {
+                    Vec::new()
+                };
+                for (at, (_, vector, exp)) in parameters.iter().enumerate() {
+                    for which in 0..if *vector { 3 } else { 1 } {
+                        let v = value(at, which);
+                        inputs.push(if *exp { maths::ln(v) } else { v });
+                    }
+                }
+                let rows: Vec<f64> = (0..ROWS)
+                    .map(|i| {
+                        let p: Vec<f64> = (0..domains.len())
+                            .map(|at| {
+                                let v = value(at, level[i]);
+                                if parameters[at].2 {
+                                    maths::exp(maths::ln(v))
+                                } else {
+                                    v
+                                }
+                            })
+                            .collect();
+                        law.at(&p).log_density(x[i])
+                    })
+                    .collect();
+                let want: f64 = rows.iter().sum();
+                let size: f64 = rows.iter().map(|r| r.abs()).sum();
+                let mut out = [0.0];
+                machine.run(&inputs, &mut out);
+                let at = format!(
+                    "{} arrangement {arrangement} trial {trial:?}: {} for {want}",
+                    law.usage(),
+                    out[0]
+                );
+                if want.is_finite() {
+                    assert!((out[0] - want).abs() <= 1e-10 * (1.0 + size), "{at}");
+                } else {
+                    assert!(
+                        out[0].is_nan() || out[0] == f64::NEG_INFINITY || out[0] == want,
+                        "{at}"
+                    );
+                }
+            }
+        }
+    }
 }
 
 fn same(a: f64, b: f64) -> bool {

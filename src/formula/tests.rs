@@ -1,0 +1,558 @@
+//! Formulas from text to value: round trips, faults with their places, meaning.
+
+use super::expr::{Call, Expr, Form, Infix, Prefix};
+use super::function::functions;
+use super::*;
+use crate::laws;
+use crate::place::{Faults, Place, Source, Text};
+use crate::reading::{Cells, Matrix as Columns, RowNames, Table};
+use proptest::prelude::*;
+use std::sync::Arc;
+
+fn place() -> Place {
+    Place {
+        source: Arc::new(Source {
+            name: "t".into(),
+            text: String::new(),
+        }),
+        span: 0..0,
+    }
+}
+
+fn table() -> Arc<Table> {
+    let text = "station,site,kind,y,x1,x2\n\
+        Cawdle,north,old,1,1,0.5\n\
+        Thorney Drove,south,new,2,0,1.5\n\
+        Sloe Fen,north,new,3.5,2,-1\n\
+        Cawdle End,east,old,8,1,0\n";
+    let mut table = Table::bare("t", text).unwrap();
+    let sites = ["Cawdle", "Thorney Drove", "Sloe Fen", "Cawdle End"];
+    table.names = Some(RowNames {
+        column: "station".into(),
+        values: sites.map(String::from).to_vec(),
+    });
+    table.matrices = vec![Columns {
+        name: "x".into(),
+        columns: vec![4, 5],
+    }];
+    Arc::new(table)
+}
+
+/// Unknowns: `a`, `b` numbers; `rate` a row of t; `effect` a level of t.site; `cross` of t.site and t.kind;
+/// `beta` a column of t.x; `k` a number.
+struct Names {
+    terms: Vec<(&'static str, Term)>,
+    table: Arc<Table>,
+}
+
+impl Scope for Names {
+    fn find(&self, name: &str) -> Option<Entity> {
+        if name == "t" {
+            return Some(Entity::Table(self.table.clone()));
+        }
+        let found = self.terms.iter().find(|(known, _)| *known == name);
+        found.map(|(_, term)| Entity::Term(term.clone()))
+    }
+    fn names(&self) -> Vec<String> {
+        self.terms
+            .iter()
+            .map(|(name, _)| (*name).to_string())
+            .chain(["t".to_string()])
+            .collect()
+    }
+}
+
+fn scope(graph: &mut Graph) -> Names {
+    let table = table();
+    let level = |name: &str| match &table.column(name).unwrap().cells {
+        Cells::Labels { levels, .. } => levels.clone(),
+        Cells::Numbers { .. } => Vec::new(),
+    };
+    let (site, kind) = (level("site"), level("kind"));
+    let shapes = [
+        ("a", Shape::Number),
+        ("b", Shape::Number),
+        ("k", Shape::Number),
+        ("rate", Shape::Vector(Axis::rows(&table))),
+        ("effect", Shape::Vector(Axis::levels(&table, "site", &site))),
+        (
+            "cross",
+            Shape::Vector(Axis::crossed(&table, ("site", &site), ("kind", &kind))),
+        ),
+        (
+            "beta",
+            Shape::Vector(Axis::columns(&table, table.matrix("x").unwrap())),
+        ),
+    ];
+    let terms = shapes.map(|(name, shape)| {
+        let value = graph.input(shape.clone());
+        (
+            name,
+            Term {
+                value,
+                shape,
+                kind: Kind::Number,
+            },
+        )
+    });
+    Names {
+        terms: terms.to_vec(),
+        table,
+    }
+}
+
+/// a, b, k, rate (4), effect (north, south, east), cross (6), beta (2)
+const INPUTS: [f64; 18] = [
+    0.5, 2.0, 2.0, 0.1, 0.2, 0.3, 0.4, 10.0, 20.0, 30.0, 1.0, 2.0, 3.0, 4.0, 5.0, 6.0, 0.25, -0.5,
+];
+
+fn value_at(text: &str, inputs: &[f64]) -> Result<Vec<f64>, Vec<String>> {
+    let mut faults = Faults::default();
+    let mut graph = Graph::new();
+    let names = scope(&mut graph);
+    let term = parse(&Text::bare(text), &mut faults)
+        .and_then(|expr| lower(&expr, &names, &mut graph, &mut faults));
+    let Some(term) = term else {
+        let words = |f: &crate::place::Fault| {
+            let place = f
+                .place
+                .as_ref()
+                .map_or("", |p| &p.source.text[p.span.clone()]);
+            format!(
+                "{place} | {} | {}",
+                f.what,
+                f.help.clone().unwrap_or_default()
+            )
+        };
+        return Err(faults.0.iter().map(words).collect());
+    };
+    assert!(faults.is_empty(), "{text}: a value and a fault: {faults:?}");
+    let program = Program::compile(&graph, &[term.value]);
+    let mut out = vec![0.0; program.outputs()];
+    program.machine(1).run(inputs, &mut out);
+    Ok(out)
+}
+
+fn value(text: &str) -> Vec<f64> {
+    value_at(text, &INPUTS).unwrap_or_else(|faults| panic!("{text}: {faults:?}"))
+}
+
+fn faults(text: &str) -> Vec<String> {
+    value_at(text, &INPUTS).expect_err(text)
+}
+
+#[track_caller]
+fn close(text: &str, want: &[f64]) {
+    let got = value(text);
+    assert_eq!(got.len(), want.len(), "{text}");
+    for (g, w) in got.iter().zip(want) {
+        assert!(
+            (g - w).abs() <= 1e-12 * (1.0 + w.abs()),
+            "{text}: {got:?} for {want:?}"
+        );
+    }
+}
+
+#[test]
+fn arithmetic() {
+    close("1 + 2 * 3", &[7.0]);
+    close("-2^2", &[-4.0]);
+    close("2^-1", &[0.5]);
+    close("2^3^2", &[512.0]);
+    close("8 / 4 / 2", &[1.0]);
+    close("8 - 4 - 2", &[2.0]);
+    close("-a * -b", &[1.0]);
+    close("a - -b", &[2.5]);
+    close("(a + b)^2 / 5", &[1.25]);
+    close("1e-3 * 2.5E2", &[0.25]);
+    close("if(a < b and not (a == 1), 3, 4)", &[3.0]);
+    close("1 < 2 or a > 3", &[1.0]);
+    close("rate * t.y", &[0.1, 0.4, 1.05, 3.2]);
+    close("sum(rate)", &[1.0]);
+    close("mean(t.y)", &[3.625]);
+    close("min(rate) + max(rate)", &[0.5]);
+    close("max(rate, 0.25)", &[0.25, 0.25, 0.3, 0.4]);
+    close("variance(t.y)", &[9.5625]);
+    close("sd(rate)^2", &[0.05 / 3.0]);
+    close("count(t.y > 1.5)", &[3.0]);
+    close("any(rate > 0.35)", &[1.0]);
+    close("all(rate > 0.35)", &[0.0]);
+    close("length(beta)", &[2.0]);
+    close("dot(t.x, beta)", &[0.0, -0.75, 1.0, 0.25]);
+    close("dot(rate, t.y)", &[0.1 + 0.4 + 1.05 + 3.2]);
+    close("ln_choose(5, 2)", &[10.0_f64.ln()]);
+    close("log_odds(probability(a))", &[0.5]);
+    close("ln_sum_exp(rate * 0 - 1000)", &[-1000.0 + 4.0_f64.ln()]);
+    close("t.site == \"north\"", &[1.0, 0.0, 1.0, 0.0]);
+    close("\"north\" != t.site", &[0.0, 1.0, 0.0, 1.0]);
+}
+
+#[test]
+fn sums_taken_apart() {
+    let y = [1.0, 2.0, 3.5, 8.0];
+    let rate = [0.1, 0.2, 0.3, 0.4];
+    let effect = [10.0, 20.0, 10.0, 30.0];
+    let eta = [0.0, -0.75, 1.0, 0.25];
+    let over = |f: &dyn Fn(usize) -> f64| (0..4).map(f).sum::<f64>();
+    close(
+        "sum((t.y - a)^2)",
+        &[over(&|i| (y[i] - 0.5) * (y[i] - 0.5))],
+    );
+    close(
+        "sum(((a - t.y) / b)^2)",
+        &[over(&|i| ((y[i] - 0.5) / 2.0).powi(2))],
+    );
+    close(
+        "sum((effect[t.site] - a) * t.y / b)",
+        &[over(&|i| (effect[i] - 0.5) * y[i] / 2.0)],
+    );
+    close(
+        "sum(t.y * dot(t.x, beta) + a)",
+        &[over(&|i| y[i] * eta[i] + 0.5)],
+    );
+    close(
+        "sum(t.y * (a - b * dot(t.x, beta)))",
+        &[over(&|i| y[i] * (0.5 - 2.0 * eta[i]))],
+    );
+    close("mean(-rate / b)", &[-0.125]);
+    close("sum(3 - rate)", &[11.0]);
+    close("sum(if(a > 0, rate, 0))", &[1.0]);
+    close("sum(if(rate > 0.15, rate * b, 1))", &[1.0 + 1.8]);
+    close("sum(ln(exp(rate) ^ b))", &[2.0]);
+    close(
+        "sum(-0.5 * ((t.y - effect[t.site]) / b)^2 - ln(b))",
+        &[over(&|i| {
+            -0.5 * ((y[i] - effect[i]) / 2.0).powi(2) - 2.0_f64.ln()
+        })],
+    );
+    close("sum(rate * b * 3 * t.y / 6)", &[over(&|i| rate[i] * y[i])]);
+    close("sum(b * t.y * 2)", &[58.0]);
+    close("sum(1 / rate^2)", &[over(&|i| 1.0 / (rate[i] * rate[i]))]);
+}
+
+#[test]
+fn indexing() {
+    close("rate[3]", &[0.3]);
+    close("rate[\"Sloe Fen\"]", &[0.3]);
+    close("effect[t.site]", &[10.0, 20.0, 10.0, 30.0]);
+    close("effect[\"east\"]", &[30.0]);
+    close("cross[t.site, t.kind]", &[1.0, 4.0, 2.0, 5.0]);
+    close("cross[\"south\", t.kind]", &[3.0, 4.0, 4.0, 3.0]);
+    close("rate[t.station] - rate", &[0.0; 4]);
+    close("rate[k]", &[0.2]);
+    close("t.y[k + 1]", &[3.5]);
+    close("(rate * 2)[2]", &[0.4]);
+    close("sum(effect[t.site])", &[70.0]);
+    close("rate[3] == max(rate)", &[0.0]);
+    assert!(value("rate[k + 3]")[0].is_nan());
+    assert!(value("rate[k + 0.5]")[0].is_nan());
+    assert!(value("rate[k / 0]")[0].is_nan());
+}
+
+#[test]
+fn functions_of_laws() {
+    let normal = laws::find("normal", &["mean", "sd"]).unwrap();
+    let at = normal.at(&[0.5, 2.0]);
+    close(
+        "log_density(normal(mean = a, sd = b), 1)",
+        &[at.log_density(1.0)],
+    );
+    close(
+        "log_density(normal(sd = b, mean = a), 1)",
+        &[at.log_density(1.0)],
+    );
+    close(
+        "distribution(normal(mean = a, sd = b), 1)",
+        &[at.distribution(1.0).unwrap()],
+    );
+    close(
+        "survival(normal(mean = a, sd = b), 1)",
+        &[at.survival(1.0).unwrap()],
+    );
+    close(
+        "quantile(normal(mean = a, sd = b), 0.9)",
+        &[at.quantile(0.9).unwrap()],
+    );
+    let cut = at.truncated(Some(0.0), Some(3.0));
+    close(
+        "log_density(truncated(normal(mean = a, sd = b), from = 0, to = 3), 1)",
+        &[cut.log_density(1.0)],
+    );
+    close(
+        "quantile(truncated(normal(mean = a, sd = b), from = 0, to = 3), 0.25)",
+        &[cut.quantile(0.25).unwrap()],
+    );
+    close(
+        "sum(log_density(normal(mean = effect[t.site], sd = b), t.y))",
+        &[[10.0, 20.0, 10.0, 30.0]
+            .iter()
+            .zip([1.0, 2.0, 3.5, 8.0])
+            .map(|(m, y)| normal.at(&[*m, 2.0]).log_density(y))
+            .sum()],
+    );
+}
+
+#[test]
+fn faults_say_where_and_what_would_be_right() {
+    let mut wrong = Vec::new();
+    let mut fault = |text: &str, want: &str| {
+        let got = faults(text);
+        if got != [want] {
+            wrong.push((text.to_string(), got));
+        }
+    };
+    fault(
+        "a + rat",
+        "rat | nothing is called `rat` here | did you mean `rate`?",
+    );
+    fault("sin(a", "a | the formula ends too early | ");
+    fault(
+        "a ** 2",
+        "** | `**` is not a sign of formulas | write `^` for a power",
+    );
+    fault(
+        "0 < a < 1",
+        "< | comparisons do not chain | write `0 < x and x < 1`",
+    );
+    fault(
+        "sum(a = 1)",
+        "a | `sum` takes its arguments by position | it is called like `sum(x)`; to compare, write `==`",
+    );
+    fault(
+        "sine(a)",
+        "sine | no function is called `sine` | did you mean `sin(x)`, sine of an angle in radians?",
+    );
+    fault(
+        "effect + t.y",
+        "t.y | `effect` has one value a level of t.site, `t.y` one a row of t | write `effect[t.site]`",
+    );
+    fault(
+        "t.height",
+        "t.height | table `t` has no column `height` | its columns are `station`, `site`, `kind`, `y`, `x1`, `x2`, `x`",
+    );
+    fault("s.y", "s.y | no table is called `s` | did you mean `t`?");
+    fault(
+        "rate[5]",
+        "5 | `rate` has no element 5 | its elements have the numbers 1 to 4",
+    );
+    fault(
+        "rate[\"Cawdl\"]",
+        "\"Cawdl\" | `rate` has no element \"Cawdl\" | did you mean \"Cawdle\"?",
+    );
+    fault(
+        "a[1]",
+        "a | `a` is one value and has no elements | leave out the index: `a`",
+    );
+    fault(
+        "(a > 1) + 1",
+        "a > 1 | `a > 1` is a condition, not a number | write `if(a > 1, 1, 0)` for a number",
+    );
+    fault(
+        "a and b > 1",
+        "a | `a` is a number, not a condition | compare it with something: `a > 0`",
+    );
+    fault(
+        "t.site == \"nort\"",
+        "\"nort\" | no cell of `t.site` is \"nort\" | did you mean \"north\"?",
+    );
+    fault(
+        "dot(t.x, rate)",
+        "rate | `rate` has 4 values, but `t.x` has 2 columns | an unknown declared with `per = \"t.x\"` has one value a column",
+    );
+    fault(
+        "log_density(normal(mean = 1, std = 2), 1)",
+        "std | `normal` has no parameter `std` | did you mean `sd`? normal is written `normal(mean = …, sd = …)` or `normal(mean = …, precision = …)`",
+    );
+    fault(
+        "log_density(normal(mean = 0, sd = -1), 1)",
+        "-1 | `sd` of `normal` must be positive; it is -1 | ",
+    );
+    fault(
+        "normal(mean = 0, sd = 1)",
+        "normal | `normal` is a law, not a value | use one of its functions: `log_density(normal(…), x)` and the like",
+    );
+    fault("2a", "a | `a` cannot stand here | ");
+    fault("", " | this formula is empty | ");
+    assert!(wrong.is_empty(), "{wrong:#?}");
+}
+
+#[test]
+fn several_faults_at_once() {
+    let found = faults("foo + sum(bar, 1) * max(rate, effect)");
+    assert_eq!(found.len(), 3, "{found:?}");
+    let found = faults("max(1 +, 2 *) + sin(,)");
+    assert!(found.len() >= 2, "{found:?}");
+}
+
+#[test]
+fn deep_and_long_formulas_end_in_a_fault() {
+    let deep = format!("{}a{}", "(".repeat(30_000), ")".repeat(30_000));
+    assert_eq!(faults(&deep).len(), 1);
+    let long = vec!["a"; 30_000].join("+");
+    assert_eq!(faults(&long).len(), 1);
+    let minus = "-".repeat(60_000) + "a";
+    assert_eq!(faults(&minus).len(), 1);
+    let huge = "1".repeat(100_000);
+    assert_eq!(faults(&huge).len(), 1);
+    let index = format!("rate{}", "[1]".repeat(20_000));
+    assert_eq!(faults(&index).len(), 1);
+    let calls = format!("{}a{}", "sin(".repeat(15_000), ")".repeat(15_000));
+    assert_eq!(faults(&calls).len(), 1);
+}
+
+#[test]
+fn the_table_of_functions_is_in_order_and_each_can_be_called() {
+    let names: Vec<&str> = functions().iter().map(|f| f.name).collect();
+    assert!(names.is_sorted(), "{names:?}");
+    for function in functions() {
+        let call = function.usage.split(" or ").next().unwrap();
+        let law = "exponential(rate = 2)";
+        let call = call
+            .replace("condition", "a < 1")
+            .replace("law", law)
+            .replace("probability(log_odds)", "probability(a)")
+            .replace("(p)", "(0.5)")
+            .replace(", p)", ", 0.5)")
+            .replace("(x)", "(a)")
+            .replace(", x)", ", a)")
+            .replace("(n, k)", "(5, 2)");
+        let call = if function.name == "dot" {
+            "dot(rate, rate)".into()
+        } else {
+            call
+        };
+        if function.name == "truncated" {
+            assert!(faults(&call)[0].contains("a law is not a value"), "{call}");
+        } else {
+            assert!(
+                value(&call)[0].is_finite() || function.name == "variance" || function.name == "sd",
+                "{call}"
+            );
+        }
+    }
+}
+
+#[test]
+fn canonical_text() {
+    for (text, want) in [
+        (" a+b *  c ", "a + b * c"),
+        ("((a))+(b*c)", "a + b * c"),
+        ("(a+b)*c", "(a + b) * c"),
+        ("a-(b-c)", "a - (b - c)"),
+        ("(a-b)-c", "a - b - c"),
+        ("(-a)^2", "(-a)^2"),
+        ("-(a^2)", "-a^2"),
+        ("(a^b)^c", "(a^b)^c"),
+        ("a^(b^c)", "a^b^c"),
+        ("not (a<b)", "not a < b"),
+        ("(not a) == b", "(not a) == b"),
+        ("1.50e+2", "150"),
+        ("0.000001", "1e-6"),
+        ("x[ 'North' ]", "x[\"North\"]"),
+        ("normal(mean=0,sd=1)", "normal(mean = 0, sd = 1)"),
+    ] {
+        let mut faults = Faults::default();
+        let expr =
+            parse(&Text::bare(text), &mut faults).unwrap_or_else(|| panic!("{text}: {faults:?}"));
+        assert_eq!(expr.to_string(), want);
+    }
+}
+
+fn expression() -> impl Strategy<Value = Expr> {
+    let expr = |form: Form| Expr {
+        form,
+        place: place(),
+        depth: 0,
+    };
+    let name = "[a-z][a-z0-9_]{0,3}".prop_filter("not a word of the language", |n| {
+        !["and", "or", "not"].contains(&n.as_str())
+    });
+    let leaf = prop_oneof![
+        any::<f64>().prop_filter_map("finite", |x| x.is_finite().then(|| Form::Number(x.abs()))),
+        (0_u32..1000).prop_map(|x| Form::Number(f64::from(x))),
+        name.clone().prop_map(Form::Name),
+        (name.clone(), name.clone()).prop_map(|(table, column)| Form::Column { table, column }),
+        "[A-Za-z ']{0,5}".prop_map(Form::Label),
+    ]
+    .prop_map(expr);
+    leaf.prop_recursive(6, 40, 4, move |inner| {
+        let infix = prop::sample::select(vec![
+            Infix::Add,
+            Infix::Subtract,
+            Infix::Multiply,
+            Infix::Divide,
+            Infix::Power,
+            Infix::Equal,
+            Infix::NotEqual,
+            Infix::Less,
+            Infix::LessEqual,
+            Infix::Greater,
+            Infix::GreaterEqual,
+            Infix::And,
+            Infix::Or,
+        ]);
+        let some = prop::collection::vec(inner.clone(), 1..3);
+        let arguments = prop::collection::vec(inner.clone(), 0..3);
+        let named = prop::collection::btree_map("[a-z]{1,3}x", inner.clone(), 0..3);
+        prop_oneof![
+            (infix, inner.clone(), inner.clone()).prop_map(|(op, a, b)| Form::Infix(
+                op,
+                a.into(),
+                b.into()
+            )),
+            (any::<bool>(), inner.clone()).prop_map(|(not, a)| {
+                Form::Prefix(if not { Prefix::Not } else { Prefix::Negate }, a.into())
+            }),
+            (inner, some).prop_map(|(of, at)| Form::Index { of: of.into(), at }),
+            (name.clone(), arguments, named).prop_map(|(name, arguments, named)| {
+                Form::Call(Call {
+                    name,
+                    name_place: place(),
+                    arguments,
+                    named: named
+                        .into_iter()
+                        .map(|(key, value)| (key, place(), value))
+                        .collect(),
+                })
+            }),
+        ]
+        .prop_map(expr)
+    })
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig { cases: 500, failure_persistence: None, ..ProptestConfig::default() })]
+
+    #[test]
+    fn text_reads_back_as_the_same_tree(expr in expression()) {
+        let text = expr.to_string();
+        let mut faults = Faults::default();
+        let again = parse(&Text::bare(&text), &mut faults);
+        prop_assert!(again.is_some(), "{text}: {faults:?}");
+        let again = again.unwrap();
+        prop_assert_eq!(&again, &expr, "{}", text);
+        prop_assert_eq!(again.to_string(), text);
+    }
+
+    #[test]
+    fn any_text_is_read_or_refused(text in "\\PC{0,60}") {
+        let mut faults = Faults::default();
+        let read = parse(&Text::bare(&text), &mut faults);
+        prop_assert_eq!(read.is_none(), !faults.is_empty());
+    }
+
+    #[test]
+    fn any_words_are_lowered_or_refused(
+        words in prop::collection::vec(prop::sample::select(vec![
+            "a", "b", "k", "rate", "effect", "cross", "beta", "t", "t.y", "t.x", "t.site", "t.kind", "\"north\"", "1", "2.5", "3",
+            "+", "-", "*", "/", "^", "==", "<", ">", "and", "or", "not", "(", ")", "(", ")", "[", "]", ",", "=", ".",
+            "if(", "sum(", "max(", "dot(", "sd(", "any(", "length(", "ln_sum_exp(", "log_density(", "quantile(", "normal(mean = ",
+            "sd = ", "poisson(mean = ", "truncated(", "from = ", "categorical(probabilities = ", "nothing",
+        ]), 1..25)
+    ) {
+        let text = words.join(" ");
+        if let Err(found) = value_at(&text, &INPUTS) {
+            prop_assert!(!found.is_empty(), "{text}");
+        }
+    }
+}
