@@ -6,9 +6,9 @@ use crate::reading::load::{How, Missing, load};
 use crate::reading::{Section, Table};
 use std::path::Path;
 
-/// Reads a section `[data.NAME]` and the file it names; paths are relative to `folder`.
+/// Reads a section `[data.NAME]` and the file it names; paths are relative to `folder`. A table is given
+/// even where faults were recorded, if its cells are sound: what else a study says of it can then be looked at.
 pub fn data(name: &str, section: &Section, folder: &Path, faults: &mut Faults) -> Option<Table> {
-    let before = faults.0.len();
     let path = section
         .need(
             "file",
@@ -19,11 +19,7 @@ pub fn data(name: &str, section: &Section, folder: &Path, faults: &mut Faults) -
     let pinned = section.text("sha256", faults);
     let how = how(section, faults);
     section.finish(faults);
-    if faults.0.len() > before {
-        // Still worth reading for its own faults, unless the file is not known or would be read wrongly.
-        path.as_ref()?;
-    }
-    table(name, &path?, folder, pinned.as_ref(), &how, faults).filter(|_| faults.0.len() == before)
+    table(name, &path?, folder, pinned.as_ref(), &how, faults)
 }
 
 /// Reads a data file by its path; a fault of the file as a whole is shown at the path.
@@ -90,7 +86,10 @@ fn how(section: &Section, faults: &mut Faults) -> How {
     let missing = match section.word("missing", &["fault", "drop rows", "unknown"], faults) {
         Some("drop rows") => Missing::DropRows,
         Some("unknown") => Missing::Unknown,
-        _ => Missing::Fault,
+        Some(_) => Missing::Fault,
+        // A word at fault: no complaint of cells that it was meant for.
+        None if section.has("missing") => Missing::Unknown,
+        None => Missing::Fault,
     };
     let mut units = Vec::new();
     if let Some(unit) = section.section("unit", faults) {

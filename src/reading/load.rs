@@ -37,7 +37,8 @@ pub struct How {
 /// Faults of one kind shown of a column or of the rows; the rest is counted.
 const SHOWN: usize = 5;
 
-/// Reads a table from the text of its file. `None` only with a fault recorded.
+/// Reads a table from the text of its file. `None` only with a fault recorded; a table may be given beside
+/// faults of units and matrices.
 pub fn load(
     name: &str,
     source: Arc<Source>,
@@ -45,13 +46,12 @@ pub fn load(
     how: &How,
     faults: &mut Faults,
 ) -> Option<Table> {
-    let before = faults.0.len();
     let loader = Loader::open(name, &source, how, faults)?;
     let tallies = loader.tally(faults)?;
     let mut table = loader.take(&tallies, sha256, faults)?;
     loader.units(&mut table, faults);
     loader.matrices(&mut table, faults);
-    (faults.0.len() == before).then_some(table)
+    Some(table)
 }
 
 struct Loader<'a> {

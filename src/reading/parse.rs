@@ -14,14 +14,71 @@ pub fn parse(source: &Arc<Source>, faults: &mut Faults) -> Section {
     let (table, errors) = DeTable::parse_recoverable(&source.text);
     let damaged = !errors.is_empty();
     for error in errors {
-        let place = place(source, error.span().unwrap_or(0..0));
-        faults
-            .push(Fault::at(place, format!("this is not TOML: {}", error.message())).label("here"));
+        faults.push(syntax(
+            source,
+            error.span().unwrap_or(0..0),
+            error.message(),
+        ));
     }
     let whole = place(source, 0..0);
     let reader = Reader { source, damaged };
     let tree = reader.tree("", table.get_ref(), false, faults);
     Section::new(String::new(), whole, Arc::new(tree), false)
+}
+
+/// A fault of syntax, with plainer words and help for the slips that are made most.
+fn syntax(source: &Arc<Source>, span: Range<usize>, message: &str) -> Fault {
+    let written = source.text.get(span.clone()).unwrap_or("").trim();
+    let at = |what: String| Fault::at(place(source, span.clone()), what);
+    let begins = |words: &str| message.starts_with(words);
+    if begins("duplicate key") {
+        let line = source.text[..span.start].rfind('\n').map_or(0, |at| at + 1);
+        let header = source.text[line..].trim_start().starts_with('[');
+        let help = if header {
+            format!(
+                "several tables of one name are written [[{written}]]; one table has one header"
+            )
+        } else {
+            "a table has each key once".into()
+        };
+        return at(format!("`{written}` stands here a second time"))
+            .label("there is one already")
+            .help(help);
+    }
+    let (what, label, help) = if begins("string values must be quoted") && written.is_empty() {
+        (
+            "a value is missing",
+            "a value belongs here",
+            "text stands in quotes",
+        )
+    } else if begins("string values must be quoted") {
+        (
+            "text without quotes",
+            "text stands in quotes",
+            "numbers, true and false stand without",
+        )
+    } else if begins("key with no value") {
+        (
+            "a key without a value",
+            "`=` and a value belong here",
+            "each line is `key = value`, a header such as [model], or a comment after `#`",
+        )
+    } else if begins("invalid basic string, expected `\"`") {
+        (
+            "text that does not end on its line",
+            "a closing quote belongs here",
+            "text of several lines stands between three quotes on each side",
+        )
+    } else if begins("unexpected key or value") {
+        (
+            "something more on a line that is complete",
+            "the line should end before this",
+            "each key stands on a line of its own; text with quotes in it stands in quotes of the other kind",
+        )
+    } else {
+        return at(format!("this is not TOML: {message}")).label("here");
+    };
+    at(what.into()).label(label).help(help)
 }
 
 fn place(source: &Arc<Source>, span: Range<usize>) -> Place {

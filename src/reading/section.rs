@@ -198,8 +198,12 @@ impl Section {
         entries
     }
 
-    /// Records every key that no getter was asked for, each with the nearest one that is known here.
+    /// Records every key that no getter was asked for, each with the nearest one that is known here. Silent
+    /// in a file with faults of syntax, where keys may have ended up in the wrong table.
     pub fn finish(&self, faults: &mut Faults) {
+        if self.damaged() {
+            return;
+        }
         let asked = self.asked.borrow();
         let known: Vec<&str> = asked.iter().map(String::as_str).collect();
         for entry in &self.tree.entries {

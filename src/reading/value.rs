@@ -238,6 +238,7 @@ impl Value {
         .label("not known here");
         let choice = listed(words, "or");
         fault = match nearest(&text.text, words.iter().copied()) {
+            Some(near) if words.len() == 1 => fault.help(format!("did you mean `{near}`?")),
             Some(near) => fault.help(format!("did you mean `{near}`? It can be {choice}")),
             None => fault.help(format!("it can be {choice}")),
         };

@@ -55,6 +55,16 @@ pub(super) fn read(
         None => Some(StartSpec::Spread),
         Some(value) => start(&value, folder, faults),
     };
+    if let Some(StartSpec::File { path, table }) = &start
+        && (table.rows as u64) < ensemble.chains
+    {
+        let (rows, chains) = (table.rows, ensemble.chains);
+        let what = format!(
+            "{} starts {rows} chains, and there are {chains}",
+            table.source.name
+        );
+        faults.push(Fault::at(path.place.clone(), what).label("a row is needed for each chain"));
+    }
     section.finish(faults);
     (ensemble, start.filter(|_| faults.0.len() == before))
 }

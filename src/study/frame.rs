@@ -1,7 +1,7 @@
 //! What a study says of itself, the same at every point: title, question, root of the streams, what is kept,
 //! what is accepted.
 
-use crate::place::{Fault, Faults};
+use crate::place::{Fault, Faults, Text};
 use crate::plan::{Accepted, Keep};
 use crate::reading::{Content, Section};
 
@@ -28,7 +28,8 @@ impl Frame {
         let title = root
             .need("title", "a line that says what is studied", faults)
             .and_then(|value| value.text(faults));
-        if let Some(title) = title.as_ref().filter(|title| title.text.trim().is_empty()) {
+        let empty = |title: &&Text| title.text.trim().is_empty() && !root.damaged();
+        if let Some(title) = title.as_ref().filter(empty) {
             faults.push(Fault::at(title.place.clone(), "the title is empty"));
         }
         let question = root.text("question", faults);
@@ -70,6 +71,16 @@ fn seed(root: &Section, faults: &mut Faults) -> Option<String> {
         Content::Text(_) => {
             faults.push(
                 Fault::at(value.place.clone(), "the root is empty").label("any text will do"),
+            );
+            None
+        }
+        Content::Number(number) => {
+            let what = format!(
+                "`{}` must be text or a whole number, not {number}",
+                value.path
+            );
+            faults.push(
+                Fault::at(value.place.clone(), what).label("put it in quotes to take it as text"),
             );
             None
         }

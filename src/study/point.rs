@@ -25,7 +25,7 @@ pub(super) struct Surroundings<'a> {
 struct Read {
     name: String,
     section: Arc<Tree>,
-    found: Option<(Data, Arc<Table>)>,
+    found: (Data, Arc<Table>),
 }
 
 impl<'a> Surroundings<'a> {
@@ -58,20 +58,25 @@ impl<'a> Surroundings<'a> {
         let tree = section.tree();
         let mut read = self.read.iter();
         let known = read.find(|read| read.name == name && read.section == *tree);
-        if let Some(found) = known.and_then(|read| read.found.clone()) {
-            return Some(found);
+        if let Some(read) = known {
+            return Some(read.found.clone());
         }
+        let before = faults.0.len();
         let table = reading::data(name, section, self.folder, faults);
         if let (Some(table), Some(path)) = (&table, section.text("file", faults)) {
             self.enter(&path, &table.sha256);
         }
-        let found = table.map(|table| (described(&table, section), Arc::new(table)));
-        self.read.push(Read {
-            name: name.to_string(),
-            section: tree.clone(),
-            found: found.clone(),
-        });
-        found
+        let table = Arc::new(table?);
+        let found = (described(&table, section), table);
+        // One with faults is read anew, so that every point has them.
+        if faults.0.len() == before {
+            self.read.push(Read {
+                name: name.to_string(),
+                section: tree.clone(),
+                found: found.clone(),
+            });
+        }
+        Some(found)
     }
 }
 

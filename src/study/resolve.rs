@@ -94,7 +94,15 @@ fn points(
         points.extend(resolve_point(&at, values, surroundings, &mut here));
         looked_at += 1;
         faulty += usize::from(!here.is_empty());
+        // A fault in a swept value explains the others of its point.
+        let own = here
+            .0
+            .iter()
+            .any(|fault| swept(fault, &combination).is_some());
         for fault in here.0 {
+            if own && swept(&fault, &combination).is_none() {
+                continue;
+            }
             match found.iter_mut().find(|(known, ..)| *known == fault) {
                 Some((_, count, _)) => *count += 1,
                 None => found.push((fault, 1, combination.clone())),
@@ -110,12 +118,16 @@ fn points(
     points
 }
 
+/// The swept value that a fault lies in.
+fn swept<'a>(fault: &Fault, combination: &'a [Swept]) -> Option<&'a Swept> {
+    let within = |place: &Place| fault.place.as_ref().is_some_and(|at| place.holds(at));
+    combination.iter().find(|swept| within(&swept.place))
+}
+
 /// A fault of a point with the places that belong to it: for one in a swept value the key that the value
 /// stands for, for one that only some points have the values swept there.
 fn beside(fault: Fault, everywhere: bool, combination: &[Swept]) -> Fault {
-    let within = |place: &Place| fault.place.as_ref().is_some_and(|at| place.holds(at));
-    let own = combination.iter().find(|swept| within(&swept.place));
-    if let Some(swept) = own {
+    if let Some(swept) = swept(&fault, combination) {
         let (place, path) = (swept.key.clone(), &swept.path);
         return match place {
             Some(place) => fault.related(place, format!("`{path}` is swept")),
