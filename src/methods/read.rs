@@ -47,7 +47,6 @@ struct Unknowns<'a> {
 impl Unknowns<'_> {
     /// `[sampler] method = …`: that method for all it can move; the rest is chosen.
     fn single(&self, section: &Section, faults: &mut Faults) -> Option<Sampler> {
-        section.need("method", "one of those in `odograph catalogue`", faults)?;
         let method = method(section, faults)?;
         let options = options(section, method, faults);
         let able = |c: &usize| is_able(method, self.coordinates[*c].kind);
@@ -146,7 +145,6 @@ impl Unknowns<'_> {
         }
         let weight = table.positive("weight", faults);
         let on = self.on(table, faults);
-        table.need("method", "one of those in `odograph catalogue`", faults)?;
         let method = method(table, faults)?;
         let options = options(table, method, faults);
         let coordinates = self.able(method, on?, faults)?;
@@ -374,20 +372,23 @@ struct Options {
     times: Option<u64>,
 }
 
+/// The method of a section that needs one.
 fn method(section: &Section, faults: &mut Faults) -> Option<&'static Method> {
     let names: Vec<&str> = declaration::table()
         .iter()
         .map(|method| method.name)
         .collect();
-    let found = section
-        .word("method", &names, faults)
+    let given = section.need("method", "one of those in `odograph catalogue`", faults);
+    let found = given
+        .and_then(|value| value.word(&names, faults))
         .and_then(declaration::find);
     if found.is_none() {
-        // The keys of an unknown method can't be judged.
-        for method in declaration::table() {
-            method.options.iter().for_each(|option| {
-                section.has(option.name);
-            });
+        // Without a method its options can't be judged.
+        for option in declaration::table()
+            .iter()
+            .flat_map(|method| method.options)
+        {
+            section.has(option.name);
         }
     }
     found
@@ -448,3 +449,6 @@ fn kinds(method: &Method) -> &'static str {
         _ => "integer",
     }
 }
+
+#[cfg(test)]
+mod tests;
