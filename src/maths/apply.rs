@@ -5,6 +5,7 @@
 //! that set, with the same bits.
 
 use super::gamma::ln_gamma_positive;
+use super::power::{plain, power_plain};
 use super::trigonometric::{cos_moderate, moderate, sin_moderate};
 use super::*;
 
@@ -32,7 +33,8 @@ macro_rules! each {
         if !all {
             for i in 0..$out.len() {
                 $(let $arg = $arg[i];)+
-                if !$holds {
+                let held = $holds;
+                if !held {
                     $out[i] = $value;
                 }
             }
@@ -45,6 +47,9 @@ macro_rules! each {
 macro_rules! operations {
     ($kind:ident ($($arg:ident),+) $args:tt $($variant:ident => $value:expr $(, $holds:expr => $fast:expr)?;)+) => {
         impl $kind {
+            /// All of them.
+            pub const ALL: &'static [$kind] = &[$($kind::$variant),+];
+
             /// The value of the operation.
             #[inline(always)]
             pub fn apply(self, $($arg: f64),+) -> f64 {
@@ -106,7 +111,7 @@ operations! { Binary (a, b) (a, b)
     Subtract => a - b;
     Multiply => a * b;
     Divide => a / b;
-    Power => power(a, b);
+    Power => power(a, b), plain(a, b) => power_plain(a, b);
     Minimum => minimum(a, b);
     Maximum => maximum(a, b);
     Less => truth(a < b);

@@ -66,3 +66,49 @@ pub fn multiply_lower_transposed(l: &[f64], n: usize, z: &[f64], out: &mut [f64]
         }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    const L: [f64; 9] = [2.0, 0.0, 0.0, -1.0, 3.0, 0.0, 4.0, 0.5, 1.0];
+
+    /// L L^T, exact in doubles.
+    fn product() -> [f64; 9] {
+        let mut a = [0.0; 9];
+        for (i, j, k) in (0..27).map(|m| (m / 9, m / 3 % 3, m % 3)) {
+            a[i * 3 + j] += L[i * 3 + k] * L[j * 3 + k];
+        }
+        a
+    }
+
+    #[test]
+    fn factor_of_a_product() {
+        let mut a = product();
+        assert!(cholesky(&mut a, 3));
+        assert_eq!(a, L);
+    }
+
+    #[test]
+    fn no_factor_without_positive_pivots() {
+        for bad in [0.0, -1.0, f64::NAN, f64::INFINITY] {
+            let mut a = product();
+            a[4] = bad;
+            assert!(!cholesky(&mut a, 3), "{bad}");
+        }
+    }
+
+    #[test]
+    fn solves_undo_products() {
+        let z = [1.0, -2.0, 5.0];
+        let mut b = [0.0; 3];
+        multiply_lower(&L, 3, &z, &mut b);
+        assert_eq!(b, [2.0, -7.0, 8.0]);
+        solve_lower(&L, 3, &mut b);
+        assert_eq!(b, z);
+        multiply_lower_transposed(&L, 3, &z, &mut b);
+        assert_eq!(b, [24.0, -3.5, 5.0]);
+        solve_lower_transposed(&L, 3, &mut b);
+        assert_eq!(b, z);
+    }
+}

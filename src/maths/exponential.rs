@@ -49,11 +49,26 @@ pub fn exp(x: f64) -> f64 {
     let clamped = if x > 720.0 { 720.0 } else { x };
     let clamped = if clamped < -760.0 { -760.0 } else { clamped };
     let (k, r, c) = reduce(clamped);
-    let y = 1.0 + (r + (beyond_linear(r) + c));
-    // 2^k itself may be out of range where the product isn't
-    let half = (k * 0.5 + SHIFT) - SHIFT;
-    let y = (y * two_to(half)) * two_to(k - half);
+    let y = scale(1.0 + (r + (beyond_linear(r) + c)), k);
     if x.is_nan() { x } else { y }
+}
+
+/// y 2^k, where 2^k itself may be out of range.
+#[inline(always)]
+fn scale(y: f64, k: f64) -> f64 {
+    let half = (k * 0.5 + SHIFT) - SHIFT;
+    (y * two_to(half)) * two_to(k - half)
+}
+
+/// e^(x + rest) for a rest that is small beside 1, or an x out of range.
+#[inline(always)]
+pub(super) fn exp_of_pair(x: f64, rest: f64) -> f64 {
+    let clamped = if x > 720.0 { 720.0 } else { x };
+    let clamped = if clamped < -760.0 { -760.0 } else { clamped };
+    let (k, r, c) = reduce(clamped);
+    let c = c + if clamped == x { rest } else { 0.0 };
+    let beyond = beyond_linear(r);
+    scale(1.0 + (r + (beyond + (c + c * (r + beyond)))), k)
 }
 
 /// e^x - 1, within 1 ulp also near 0.

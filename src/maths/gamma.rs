@@ -1,8 +1,8 @@
 //! ln of the gamma function (branch-free for positive arguments) and its derivative.
 
 use super::logarithm::{ln, log1p};
-use super::pairs::polynomial;
-use super::tan;
+use super::pairs::{ODD, polynomial};
+use super::{round, tan};
 
 /// ln(2 pi) / 2.
 pub(super) const HALF_LN_TWO_PI: f64 = 0.918938533204672741780329736406;
@@ -67,11 +67,20 @@ pub(super) fn stirling_series(x: f64) -> f64 {
 }
 
 /// ln Gamma(x) - ((x - 1/2) ln x - x + ln(2 pi) / 2) for any x > 0.
+///
+/// From 2 to 8 by the recurrence of DLMF 5.5.1: the value at x less that at x + 1 is atanh(s) / s - 1 with
+/// s = 1 / (2 x + 1), a series of positive terms.
 pub(super) fn stirling_error(x: f64) -> f64 {
-    if x >= 8.0 {
-        return stirling_series(x);
+    if x < 2.0 {
+        return ln_gamma_positive(x) - ((x - 0.5) * ln(x) - x + HALF_LN_TWO_PI);
     }
-    ln_gamma_positive(x) - ((x - 0.5) * ln(x) - x + HALF_LN_TWO_PI)
+    let (mut y, mut rest) = (x, 0.0);
+    while y < 8.0 {
+        let s = 1.0 / (2.0 * y + 1.0);
+        rest += s * s * polynomial(s * s, &ODD);
+        y += 1.0;
+    }
+    stirling_series(y) + rest
 }
 
 /// ln Gamma(1 + a) for a >= 0, without cancellation near 0.
@@ -92,7 +101,7 @@ pub fn digamma(x: f64) -> f64 {
         if x == x.floor() {
             return f64::NAN;
         }
-        let part = x - x.floor();
+        let part = x - round(x);
         return digamma(1.0 - x) - std::f64::consts::PI / tan(std::f64::consts::PI * part);
     }
     if x >= 10.0 {

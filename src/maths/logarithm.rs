@@ -10,7 +10,7 @@ const ONE: u64 = 0x3ff0_0000_0000_0000;
 
 /// k and 1 + f of a positive number.
 #[inline(always)]
-fn split(x: f64) -> (f64, f64) {
+pub(super) fn split(x: f64) -> (f64, f64) {
     let small = x < f64::MIN_POSITIVE;
     let x = if small { x * 18014398509481984.0 } else { x };
     let bias = if small { 1023.0 + 54.0 } else { 1023.0 };

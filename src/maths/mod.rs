@@ -4,11 +4,18 @@
 //! Nothing here calls the platform's mathematics: only `+ - * /`, `sqrt`, comparisons and rounding to whole
 //! numbers, which are exact everywhere, and the pinned `libm` crate, which is written in them.
 
+#![expect(
+    clippy::excessive_precision,
+    reason = "constants as they were published"
+)]
+
 pub mod operation;
 
 mod apply;
 mod beta;
 mod dense;
+#[cfg(test)]
+mod ends;
 mod error;
 mod exponential;
 mod gamma;

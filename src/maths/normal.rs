@@ -1,6 +1,6 @@
 //! The standard normal law: distribution function, its logarithm, its quantile. Branch-free.
 
-use super::exponential::exp;
+use super::exponential::exp_of_pair;
 use super::logarithm::{ln, log1p};
 use super::pairs::{exact_product, polynomial};
 
@@ -18,8 +18,7 @@ fn scaled_tail(z: f64) -> f64 {
 fn tail(z: f64) -> f64 {
     let z = if z > 40.0 { 40.0 } else { z };
     let (square, rest) = exact_product(z, z);
-    let e = exp(-0.5 * square);
-    scaled_tail(z) * (e - e * (0.5 * rest))
+    scaled_tail(z) * exp_of_pair(-0.5 * square, -0.5 * rest)
 }
 
 /// P(Z <= x) of a standard normal, within 4 ulp.
@@ -68,7 +67,11 @@ pub fn normal_quantile(p: f64) -> f64 {
     } else {
         x
     };
-    if p >= 0.0 && p <= 1.0 { x } else { f64::NAN }
+    if (0.0..=1.0).contains(&p) {
+        x
+    } else {
+        f64::NAN
+    }
 }
 
 const TAIL: [f64; 24] = [

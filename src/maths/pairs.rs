@@ -36,3 +36,18 @@ pub(super) fn polynomial<const N: usize>(x: f64, c: &[f64; N]) -> f64 {
     }
     even + x * odd
 }
+
+/// 1/3, 1/5, 1/7 ...: atanh(s) / s is 1 + z times this series in z = s^2.
+pub(super) const ODD: [f64; 11] = [
+    1.0 / 3.0,
+    1.0 / 5.0,
+    1.0 / 7.0,
+    1.0 / 9.0,
+    1.0 / 11.0,
+    1.0 / 13.0,
+    1.0 / 15.0,
+    1.0 / 17.0,
+    1.0 / 19.0,
+    1.0 / 21.0,
+    1.0 / 23.0,
+];

@@ -3,7 +3,7 @@
 
 use super::exponential::{exp, expm1};
 use super::logarithm::{ln, log1p};
-use super::pairs::polynomial;
+use super::pairs::{ODD, polynomial};
 
 /// A probability and its complement, and the logarithms of both.
 #[derive(Debug, Clone, Copy)]
@@ -28,6 +28,17 @@ impl Split {
         ln_lower: f64::NEG_INFINITY,
         ln_upper: 0.0,
     };
+
+    /// Of a law with all its mass at one place, seen from `distance` below it.
+    pub fn step(distance: f64) -> Split {
+        if distance > 0.0 {
+            Split::ABOVE
+        } else if distance < 0.0 {
+            Split::ABOVE.turned()
+        } else {
+            Split::from_ln_lower(-std::f64::consts::LN_2)
+        }
+    }
 
     /// From the logarithm of the lower probability.
     pub fn from_ln_lower(ln_lower: f64) -> Split {
@@ -95,21 +106,6 @@ fn log1p_less_linear(v: f64) -> f64 {
     let z = s * s;
     2.0 * s * z * polynomial(z, &ODD) - s * v
 }
-
-/// 1/3, 1/5, 1/7 ...: atanh(s) / s is 1 + z times this series in z = s^2.
-const ODD: [f64; 11] = [
-    1.0 / 3.0,
-    1.0 / 5.0,
-    1.0 / 7.0,
-    1.0 / 9.0,
-    1.0 / 11.0,
-    1.0 / 13.0,
-    1.0 / 15.0,
-    1.0 / 17.0,
-    1.0 / 19.0,
-    1.0 / 21.0,
-    1.0 / 23.0,
-];
 
 /// The integral over u > 0 of (1 + u/x)^a (1 - u/y)^b e^(-slope u + (b/y - a/x) u): a tail of a density that
 /// is nearly normal over its last eight standard deviations, divided by the density where the tail begins.
