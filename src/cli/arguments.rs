@@ -1,7 +1,6 @@
 //! The command line.
 
 use clap::{Parser, Subcommand, ValueEnum};
-use std::num::NonZeroUsize;
 use std::path::PathBuf;
 
 /// Markov chain Monte Carlo studies from a text file, with the error of each figure and the grounds it
@@ -28,8 +27,8 @@ pub enum Command {
         #[arg(long, value_name = "DIR", default_value = "results")]
         into: PathBuf,
         /// Threads to work on; no digit depends on it [default: all that the machine offers]
-        #[arg(long, value_name = "N")]
-        threads: Option<NonZeroUsize>,
+        #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=4096))]
+        threads: Option<u16>,
         /// Print the summary as JSON on stdout
         #[arg(long)]
         json: bool,

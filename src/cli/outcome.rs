@@ -9,6 +9,7 @@ use crate::grounds::Grounds;
 use crate::plan::{NUMERICS, Plan};
 use crate::record::{self, Circumstances, Open, RecordFault};
 use crate::report;
+use std::collections::BTreeMap;
 use std::path::PathBuf;
 
 /// A finished folder.
@@ -35,7 +36,7 @@ pub fn file(
     plan: &Plan,
     ends: &[PointEnd<Reviewed>],
     open: Open,
-    circumstances: Circumstances,
+    mut circumstances: Circumstances,
 ) -> Result<Filed, NotFiled> {
     let failed: Vec<(usize, &str)> = ends
         .iter()
@@ -76,9 +77,38 @@ pub fn file(
     }
     open.write("data/summary.txt", text.as_bytes())?;
     let status = status_of(&json, &grounds, failed.len());
+    circumstances.enter("kernels", kernels(plan, ends));
     circumstances.end(&open, "done")?;
     let path = open.finish()?;
     Ok(Filed { path, status })
+}
+
+/// Points whose kernels are entered in the circumstances.
+const KERNELS: usize = 100;
+
+/// Counts and rates of the kernels since this start, a list over the chains for each: acceptance rates and
+/// the like. They begin anew with every start of the program, so they are circumstances.
+fn kernels(plan: &Plan, ends: &[PointEnd<Reviewed>]) -> Json {
+    let point = |end: &PointEnd<Reviewed>| {
+        let ended = end.ended.as_ref().ok()?;
+        let mut by_name: BTreeMap<String, Json> = BTreeMap::new();
+        for (name, value) in ended.notes.iter().flatten() {
+            let value = if value.is_nan() {
+                Json::Null
+            } else {
+                Json::real(*value)
+            };
+            let list = by_name.entry(name.clone());
+            if let Json::Array(list) = list.or_insert(Json::Array(Vec::new())) {
+                list.push(value);
+            }
+        }
+        Some(Json::object([
+            ("key", Json::text(canon::hex(&plan.point_key(end.point)))),
+            ("notes", Json::Object(by_name)),
+        ]))
+    };
+    Json::array(ends.iter().take(KERNELS).filter_map(point))
 }
 
 fn values_text(plan: &Plan, point: usize) -> String {

@@ -15,7 +15,7 @@ use std::path::Path;
 use std::sync::Arc;
 
 /// Runs a study, goes on with it, or reports it again.
-pub fn run(file: &Path, into: &Path, threads: Option<NonZeroUsize>, json: bool) -> Status {
+pub fn run(file: &Path, into: &Path, threads: Option<u16>, json: bool) -> Status {
     let done = carry_out(file, into, threads);
     match done {
         Ok(filed) => report(&filed, json),
@@ -44,7 +44,7 @@ fn report(filed: &Filed, json: bool) -> Status {
     }
 }
 
-fn carry_out(file: &Path, into: &Path, threads: Option<NonZeroUsize>) -> Result<Filed, Status> {
+fn carry_out(file: &Path, into: &Path, threads: Option<u16>) -> Result<Filed, Status> {
     let read = study::read(file)?;
     let stops = study::stops(&read.plan);
     if !stops.is_empty() {
@@ -57,7 +57,7 @@ fn carry_out(file: &Path, into: &Path, threads: Option<NonZeroUsize>) -> Result<
             outcome::again(path, &read.plan).map_err(|fault| tell_record(&fault))
         }
         Entry::Open(open) => {
-            let threads = threads.map_or_else(all_threads, NonZeroUsize::get);
+            let threads = threads.map_or_else(all_threads, usize::from);
             work(&read, *open, threads)
         }
     }

@@ -36,16 +36,18 @@ impl Task {
 
     fn of(plan: &Plan, index: usize) -> Task {
         let point = &plan.points[index];
-        let chain = |chain: u64| Chain {
-            seed: ChainSeed {
-                chain: chain as usize,
-                stream_key: plan.stream_key(index, chain),
-            },
-            key: plan.chain_key(index, chain),
-        };
+        let all = 0..point.ensemble.chains;
+        let stream_keys = plan.stream_keys(index, all.clone());
+        let keys = plan.chain_keys(index, all);
+        let chains = stream_keys.into_iter().zip(keys).enumerate();
         Task {
             model: point.model.clone(),
-            chains: (0..point.ensemble.chains).map(chain).collect(),
+            chains: chains
+                .map(|(chain, (stream_key, key))| Chain {
+                    seed: ChainSeed { chain, stream_key },
+                    key,
+                })
+                .collect(),
             burn_in: point.ensemble.burn_in,
             reviews: plan::reviews(&point.ensemble, point.goal.as_ref(), point.block),
             block: point.block,

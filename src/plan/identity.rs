@@ -70,7 +70,8 @@ impl Plan {
         tagged("odograph plan digest", &covered)
     }
 
-    fn stream_keys(&self, point: usize, chains: std::ops::Range<u64>) -> Vec<[u8; 32]> {
+    /// [`Plan::stream_key`] of several chains of a point.
+    pub fn stream_keys(&self, point: usize, chains: std::ops::Range<u64>) -> Vec<[u8; 32]> {
         // The content may be large: hashed once for all chains.
         let content = tagged("odograph stream content", &self.content(point));
         let values = match self.shared {
@@ -89,7 +90,8 @@ impl Plan {
         chains.map(key).collect()
     }
 
-    fn chain_keys(&self, point: usize, chains: std::ops::Range<u64>) -> Vec<[u8; 32]> {
+    /// [`Plan::chain_key`] of several chains of a point.
+    pub fn chain_keys(&self, point: usize, chains: std::ops::Range<u64>) -> Vec<[u8; 32]> {
         let streams = self.stream_keys(point, chains);
         let point = &self.points[point];
         let together = match point.ensemble.burn_in {

@@ -21,6 +21,8 @@ impl Circumstances {
     pub fn begin(open: &Open, threads: usize) -> Result<Circumstances, RecordFault> {
         let path = open.path().join(NAME);
         let earlier = match fs::read_to_string(&path) {
+            // What a power cut left of it before it was forced to the disk.
+            Ok(text) if text.trim_matches(['\0', ' ', '\n']).is_empty() => Vec::new(),
             Ok(text) => Json::read(&text)
                 .map_err(|words| RecordFault::foreign(&path, &words))?
                 .get("starts")
@@ -44,6 +46,11 @@ impl Circumstances {
         let circumstances = Circumstances { earlier, this };
         circumstances.save(open)?;
         Ok(circumstances)
+    }
+
+    /// Enters something more about this start.
+    pub fn enter(&mut self, name: &str, what: Json) {
+        self.this.push((name.into(), what));
     }
 
     /// Enters how this start ended.

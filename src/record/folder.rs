@@ -10,8 +10,8 @@
 //!   lock                                                 while it is worked on
 //! ```
 //!
-//! Every file but the journal is written aside, forced to the disk and renamed; the folder itself is renamed
-//! last.
+//! Every file but the journal is written aside and renamed; when all are there they are forced to the disk, and
+//! the folder itself is renamed last.
 
 use super::fault::RecordFault;
 use super::journal::JournalFile;
@@ -87,13 +87,13 @@ impl Open {
         &self.folder.open
     }
 
-    /// Writes a file of the folder, named from its top: `data/plan.json`. It is there whole or not at all.
+    /// Writes a file of the folder, named from its top: `data/plan.json`. It appears whole, and is forced to
+    /// the disk when the folder is finished.
     pub fn write(&self, name: &str, bytes: &[u8]) -> Result<(), RecordFault> {
         let path = self.folder.open.join(name);
         let aside = path.with_added_extension("part");
         let written = File::create(&aside).and_then(|mut file| {
             file.write_all(bytes)?;
-            file.sync_all()?;
             fs::rename(&aside, &path)
         });
         written.map_err(|fault| {
@@ -107,7 +107,11 @@ impl Open {
         let Folder { open, done, .. } = &self.folder;
         let renamed = || -> io::Result<()> {
             for inner in ["data/inputs", "data", ""] {
-                File::open(open.join(inner))?.sync_all()?;
+                let inner = open.join(inner);
+                for entry in fs::read_dir(&inner)? {
+                    File::open(entry?.path())?.sync_all()?;
+                }
+                File::open(inner)?.sync_all()?;
             }
             fs::rename(open, done)?;
             fs::remove_file(done.join("lock"))?;

@@ -62,8 +62,8 @@ impl JournalFile {
         let cut = length.saturating_sub(scanned.end);
         if cut > 0 {
             file.set_len(scanned.end).map_err(io)?;
+            file.sync_all().map_err(io)?;
         }
-        file.sync_all().map_err(io)?;
         let file = Arc::new(file);
         Ok(JournalFile {
             path: path.to_owned(),

@@ -2,7 +2,7 @@
 //! review and the speed.
 
 use super::lines::review;
-use super::pace::Pace;
+use super::pace::{Pace, Standing};
 use crate::course::Phase;
 use crate::engine::Event;
 use indicatif::{MultiProgress, ProgressBar, ProgressStyle};
@@ -11,6 +11,8 @@ use std::time::Duration;
 
 /// More chains than this have no bars of their own.
 const MOST: usize = 16;
+/// Between two pictures.
+const PICTURE: Duration = Duration::from_millis(150);
 
 pub struct Bars {
     all: MultiProgress,
@@ -18,6 +20,7 @@ pub struct Bars {
     points: Option<ProgressBar>,
     chains: BTreeMap<(usize, usize), ProgressBar>,
     last_review: String,
+    last_picture: Duration,
 }
 
 fn style(template: &str) -> ProgressStyle {
@@ -35,63 +38,49 @@ impl Bars {
             points: None,
             chains: BTreeMap::new(),
             last_review: String::new(),
+            last_picture: Duration::ZERO,
         }
     }
 
     pub fn event(&mut self, event: &Event, pace: &Pace, now: Duration) {
         match event {
-            Event::Begun { points, .. } if *points > 1 => {
-                let bar = ProgressBar::new(*points as u64)
-                    .with_style(style("points   [{bar:30}] {pos} of {len}"));
-                self.points = Some(self.all.insert_before(&self.foot, bar));
-            }
-            Event::PointBegun { point, chains, .. } if self.chains.len() + chains <= MOST => {
-                for chain in 0..*chains {
-                    let name = if pace.points > 1 {
-                        format!("point {:<4} chain {:<3}", point + 1, chain + 1)
-                    } else {
-                        format!("chain {:<3}", chain + 1)
-                    };
-                    let bar = ProgressBar::no_length()
-                        .with_style(style("{prefix} [{bar:30}] {msg} {pos} of {len}"))
-                        .with_prefix(name);
-                    let bar = self.all.insert_before(&self.foot, bar);
-                    self.chains.insert((*point, chain), bar);
-                }
-            }
-            Event::Advanced {
-                point,
-                chain,
-                phase,
-                done,
-                target,
-                ..
-            } => {
-                if let Some(bar) = self.chains.get(&(*point, *chain)) {
-                    bar.set_message(match phase {
-                        Phase::BurnIn => "burn-in",
-                        Phase::Draws => "draws  ",
-                    });
-                    bar.set_length(*target);
-                    bar.set_position(*done);
-                }
-            }
             Event::BurnInReviewed { .. } | Event::Reviewed { .. } => {
                 self.last_review = review(event, pace).unwrap_or_default();
             }
-            Event::PointDone { point } => {
-                let gone = self
-                    .chains
-                    .extract_if((*point, 0)..(*point + 1, 0), |_, _| true);
-                for (_, bar) in gone {
-                    bar.finish_and_clear();
-                    self.all.remove(&bar);
-                }
-                if let Some(points) = &self.points {
-                    points.inc(1);
+            Event::PointDone { point } => self.take_away(*point),
+            Event::Advanced { .. } if now >= self.last_picture + PICTURE => {}
+            _ => return,
+        }
+        self.last_picture = now;
+        self.picture(pace, now);
+    }
+
+    fn take_away(&mut self, point: usize) {
+        let gone: Vec<_> = self
+            .chains
+            .extract_if((point, 0)..(point + 1, 0), |_, _| true)
+            .collect();
+        for (_, bar) in gone {
+            bar.finish_and_clear();
+            self.all.remove(&bar);
+        }
+    }
+
+    fn picture(&mut self, pace: &Pace, now: Duration) {
+        if pace.points > 1 {
+            let points = self.points.get_or_insert_with(|| {
+                let bar = ProgressBar::new(pace.points as u64)
+                    .with_style(style("points    [{bar:30}] {pos} of {len}"));
+                self.all.insert(0, bar)
+            });
+            points.set_position(pace.points_done as u64);
+        }
+        for (point, chains) in &pace.under_way {
+            for (chain, standing) in chains.iter().enumerate() {
+                if let Some(standing) = standing {
+                    self.chain((*point, chain), standing, pace.points > 1);
                 }
             }
-            _ => {}
         }
         let speed = pace.words(now);
         self.foot.set_message(match &*self.last_review {
@@ -100,12 +89,39 @@ impl Bars {
         });
     }
 
-    pub fn end(self) {
-        for bar in self.chains.values() {
-            bar.finish_and_clear();
+    fn chain(&mut self, key: (usize, usize), standing: &Standing, swept: bool) {
+        if !self.chains.contains_key(&key) {
+            if self.chains.len() == MOST {
+                return;
+            }
+            let name = if swept {
+                format!("point {:<4} chain {:<3}", key.0 + 1, key.1 + 1)
+            } else {
+                format!("chain {:<3}", key.1 + 1)
+            };
+            let bar = ProgressBar::new(standing.target)
+                .with_style(style("{prefix} [{bar:30}] {msg} {pos} of {len}"))
+                .with_prefix(name);
+            // After the bars that stand before it.
+            let before = self.chains.range(..key).next_back();
+            let bar = match before {
+                Some((_, before)) => self.all.insert_after(before, bar),
+                None => self.all.insert(usize::from(self.points.is_some()), bar),
+            };
+            self.chains.insert(key, bar);
         }
-        if let Some(points) = &self.points {
-            points.finish_and_clear();
+        let bar = &self.chains[&key];
+        bar.set_message(match standing.phase {
+            Phase::BurnIn => "burn-in",
+            Phase::Draws => "draws  ",
+        });
+        bar.set_length(standing.target);
+        bar.set_position(standing.done);
+    }
+
+    pub fn end(self) {
+        for bar in self.chains.values().chain(&self.points) {
+            bar.finish_and_clear();
         }
         self.foot.finish_and_clear();
         let _ = self.all.clear();
