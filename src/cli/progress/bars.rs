@@ -18,7 +18,7 @@ pub struct Bars {
     all: MultiProgress,
     foot: ProgressBar,
     points: Option<ProgressBar>,
-    chains: BTreeMap<(usize, usize), ProgressBar>,
+    chains: BTreeMap<(usize, usize), (ProgressBar, Standing)>,
     last_review: String,
     last_picture: Duration,
 }
@@ -60,7 +60,7 @@ impl Bars {
             .chains
             .extract_if((point, 0)..(point + 1, 0), |_, _| true)
             .collect();
-        for (_, bar) in gone {
+        for (_, (bar, _)) in gone {
             bar.finish_and_clear();
             self.all.remove(&bar);
         }
@@ -105,12 +105,23 @@ impl Bars {
             // After the bars that stand before it.
             let before = self.chains.range(..key).next_back();
             let bar = match before {
-                Some((_, before)) => self.all.insert_after(before, bar),
+                Some((_, (before, _))) => self.all.insert_after(before, bar),
                 None => self.all.insert(usize::from(self.points.is_some()), bar),
             };
-            self.chains.insert(key, bar);
+            let nowhere = Standing {
+                target: 0,
+                ..*standing
+            };
+            self.chains.insert(key, (bar, nowhere));
         }
-        let bar = &self.chains[&key];
+        let Some((bar, shown)) = self
+            .chains
+            .get_mut(&key)
+            .filter(|(_, shown)| shown != standing)
+        else {
+            return;
+        };
+        *shown = *standing;
         bar.set_message(match standing.phase {
             Phase::BurnIn => "burn-in",
             Phase::Draws => "draws  ",
@@ -120,7 +131,8 @@ impl Bars {
     }
 
     pub fn end(self) {
-        for bar in self.chains.values().chain(&self.points) {
+        let bars = self.chains.values().map(|(bar, _)| bar);
+        for bar in bars.chain(&self.points) {
             bar.finish_and_clear();
         }
         self.foot.finish_and_clear();
