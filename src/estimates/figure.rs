@@ -5,8 +5,8 @@ use crate::maths::absolute;
 /// `value` with the error in units of its last digits: `0.4213(7)` is 0.4213 with error 0.0007.
 ///
 /// The error is rounded up, never down: to one digit, or to two where the first is a 1 or a 2 (rounding
-/// 0.0012 up to 0.002 would overstate it by two thirds). From 10^7 on, below 10^-4, and wherever the
-/// error reaches past the units, a power of ten stands behind: `1.235(8)e5`. A value without an error has
+/// 0.0012 up to 0.002 would overstate it by two thirds). From 10^7 on and below 10^-4 a power of ten stands
+/// behind: `4.213(7)e-8`. A value without an error has
 /// three digits and a question mark, `0.421(?)`; no value is a dash.
 pub fn figure(value: Option<f64>, error: Option<f64>) -> String {
     let Some(value) = value.filter(|v| !v.is_nan()) else {
@@ -28,7 +28,7 @@ pub fn figure(value: Option<f64>, error: Option<f64>) -> String {
 
 fn with_error(value: f64, error: f64) -> String {
     let (digits, place) = rounded_up(error);
-    written(value, place, digits.len(), &format!("({digits})"))
+    written(value, place, digits.len(), &digits)
 }
 
 /// A value rounded at a power of ten, without an error: `rounded(0.02118, -3)` is 0.021.
@@ -56,22 +56,35 @@ pub fn place_for(width: f64) -> Option<i32> {
     Some(if two < 30 { place - 1 } else { place })
 }
 
-/// The value rounded at a place, with a mark before the power of ten, if there is one.
-fn written(value: f64, place: i32, digits: usize, mark: &str) -> String {
+/// The value rounded at a place, then the error's digits in parentheses, if any.
+fn written(value: f64, place: i32, digits: usize, error: &str) -> String {
+    let mark = |zeros: usize| {
+        if error.is_empty() {
+            String::new()
+        } else {
+            format!("({error}{})", "0".repeat(zeros))
+        }
+    };
     let highest = place + digits as i32 - 1;
     // The power of ten of the leading digit of the value, once rounded.
     let leading = leading_power(value, place);
-    let small = leading.unwrap_or(highest) < -4 && highest < -4;
-    if place > 0 || small || leading.is_some_and(|p| p >= 7) {
-        let power = match leading {
-            Some(power) if power >= place => power,
-            _ => highest,
-        };
+    let top = leading.unwrap_or(highest);
+    if (top < -4 && highest < -4) || top >= 7 || highest >= 7 {
+        let power = if top < place { highest } else { top };
         let decimals = usize::try_from(power - place).unwrap_or(0);
-        format!("{}{mark}e{power}", shifted(value, power, decimals))
+        format!("{}{}e{power}", shifted(value, power, decimals), mark(0))
+    } else if let Ok(zeros) = usize::try_from(place) {
+        // Rounded left of the point: zeros fill the places down to the units, in the error too.
+        let whole = shifted(value, place, 0);
+        let zeros_of_value = if whole == "0" { 0 } else { zeros };
+        format!("{whole}{}{}", "0".repeat(zeros_of_value), mark(zeros))
     } else {
         let decimals = usize::try_from(-place).unwrap_or(0);
-        format!("{}{mark}", unsigned_zero(format!("{value:.decimals$}")))
+        format!(
+            "{}{}",
+            unsigned_zero(format!("{value:.decimals$}")),
+            mark(0)
+        )
     }
 }
 
@@ -240,7 +253,10 @@ mod tests {
 
     #[test]
     fn large_and_small() {
-        assert_eq!(f(123_456.0, 789.0), "1.235(8)e5");
+        assert_eq!(f(123_456.0, 789.0), "123500(800)");
+        assert_eq!(f(12_345_678.0, 789.0), "1.23457(8)e7");
+        assert_eq!(f(9_999_960.0, 789.0), "1.00000(8)e7");
+        assert_eq!(f(2.0, 2e7), "0.0(20)e7");
         assert_eq!(f(4.2134e-8, 6.8e-11), "4.213(7)e-8");
         assert_eq!(f(1.5e300, 2.2e297), "1.5000(22)e300");
         assert_eq!(f(123_456_789.0, 0.5), "1.234567890(5)e8");
@@ -253,17 +269,17 @@ mod tests {
     fn errors_beyond_the_value() {
         assert_eq!(f(0.01, 3.0), "0(3)");
         assert_eq!(f(-0.01, 3.0), "0(3)");
-        assert_eq!(f(1.0, 400.0), "0(4)e2");
+        assert_eq!(f(1.0, 400.0), "0(400)");
         assert_eq!(f(0.0, 0.004), "0.000(4)");
         assert_eq!(f(1e-9, 3e-7), "0(3)e-7");
-        assert_eq!(f(-90.0, 100.0), "-9(10)e1");
+        assert_eq!(f(-90.0, 100.0), "-90(100)");
     }
 
     #[test]
     fn rounding_at_a_place() {
         assert_eq!(rounded(0.02118, -3), "0.021");
         assert_eq!(rounded(-0.0002, -3), "0.000");
-        assert_eq!(rounded(123_456.0, 2), "1.235e5");
+        assert_eq!(rounded(123_456.0, 2), "123500");
         assert_eq!(rounded(2.118e-9, -11), "2.12e-9");
         assert_eq!(rounded(f64::INFINITY, 0), "inf");
         assert_eq!(place_for(0.097), Some(-3));
@@ -313,7 +329,16 @@ mod tests {
             let read_error: f64 = format!("{digits}e{}", power - decimals)
                 .parse()
                 .expect("a number");
-            let unit_of_last: f64 = format!("1e{}", power - decimals).parse().expect("a number");
+            // Zeros that only fill the places down to the units.
+            let kept = if digits.starts_with(['1', '2']) { 2 } else { 1 };
+            let filled = if decimals == 0 && !rest.contains('e') {
+                digits.len().saturating_sub(kept) as i32
+            } else {
+                0
+            };
+            let unit_of_last: f64 = format!("1e{}", power - decimals + filled)
+                .parse()
+                .expect("a number");
             assert!(
                 read_error >= error && read_error < 1.5 * error,
                 "{text}: {value} {error}"

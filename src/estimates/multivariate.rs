@@ -17,7 +17,7 @@ pub fn multivariate_effective(quantities: &[&[&[f64]]], batches: usize) -> Optio
             && q.iter()
                 .all(|c| c.len() == draws && c.iter().all(|x| x.is_finite()))
     };
-    if batches == 0 || draws < batches || !quantities.iter().all(|q| fits(q)) {
+    if batches == 0 || draws < batches || !quantities.iter().all(fits) {
         return None;
     }
     let centred: Vec<Vec<f64>> = quantities

@@ -100,7 +100,7 @@ pub(crate) fn short(x: f64) -> String {
     let size = if x < 0.0 { -x } else { x };
     if x == 0.0 {
         "0".into()
-    } else if (1e-3..1e5).contains(&size) {
+    } else if (1e-4..1e5).contains(&size) {
         let exponent: i32 = format!("{size:e}")
             .split_once('e')
             .map_or(0, |(_, e)| e.parse().unwrap_or(0));
@@ -218,7 +218,7 @@ impl fmt::Display for Note {
                 write!(
                     f,
                     "; with an effective size of {} the probability ",
-                    short(*size)
+                    size_text(*size)
                 )?;
                 if *seen == 0 {
                     write!(f, "is below {} (97.5 % limit)", limit(*high))
@@ -255,7 +255,7 @@ impl fmt::Display for Note {
             Note::FewEffective { size } => write!(
                 f,
                 "an effective size of {} is too small to trust the errors beside it",
-                short(*size)
+                size_text(*size)
             ),
             Note::NotMixed { r_hat } => write!(
                 f,
@@ -279,6 +279,15 @@ impl fmt::Display for Note {
                 )
             }
         }
+    }
+}
+
+/// An effective size: whole from 100 on.
+fn size_text(size: f64) -> String {
+    if size < 100.0 {
+        short(size)
+    } else {
+        count(size as u64)
     }
 }
 

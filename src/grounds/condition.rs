@@ -98,6 +98,6 @@ pub(super) fn said(conditions: &[Condition], name: &'static str) -> Condition {
     out.unwrap_or(Condition {
         name,
         standing: Standing::NotKnown,
-        evidence: "nothing is known about it before the draws".into(),
+        evidence: "nothing is known about it".into(),
     })
 }

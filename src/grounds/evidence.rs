@@ -17,7 +17,14 @@ pub(super) fn weigh(condition: Condition, summary: &Summary) -> Condition {
         return condition;
     }
     let found = match condition.name {
-        "irreducible" | "recurrent" => reach(summary),
+        "irreducible" => reach(summary),
+        "recurrent" => reach(summary).map(|(standing, words)| match standing {
+            Standing::NotContradicted => (
+                standing,
+                "the chains came together from different starts; starts that none of them had are not seen".into(),
+            ),
+            _ => (standing, words),
+        }),
         "start forgotten" => start(summary),
         "integrable" => moment(summary, 1.0, "the mean"),
         "second moment" | "moment above two" => moment(summary, 0.5, "the variance"),

@@ -26,10 +26,10 @@ fn main_table(summary: &Summary, notes: &Notes, page: usize) -> String {
         Column::new("quantity", Side::Left),
         Column::new("unit", Side::Left),
         Column::new("value\n(Monte Carlo\nerror)", Side::Right),
-        Column::new("standard\nuncertainty", Side::Right),
+        Column::new("standard\nuncer-\ntainty", Side::Right),
         Column::new(&heading, Side::Right),
         Column::new("R-hat", Side::Right),
-        Column::new("effective size\nbulk", Side::Right),
+        Column::new("effective\nsize:\nbulk", Side::Right),
         Column::new("tail", Side::Right),
         Column::new("notes", Side::Left),
     ];

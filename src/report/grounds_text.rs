@@ -65,26 +65,26 @@ fn claim_text<'a>(
 }
 
 fn line(out: &mut String, condition: &Condition, grounds: &Grounds, indent: usize, page: usize) {
+    const EVIDENCE: usize = 44;
+    let name = format!("{}{}", " ".repeat(indent), condition.name);
+    out.push_str(&pad(&name, 26, Side::Left));
+    out.push_str(&pad(
+        standing_word(condition.standing),
+        EVIDENCE - 26,
+        Side::Left,
+    ));
     let accepted = if grounds.accepts(condition.name) {
-        " (accepted)"
+        "accepted by the study; "
     } else {
         ""
     };
-    let head = format!(
-        "{}{}{}{accepted}  ",
-        " ".repeat(indent),
-        pad(condition.name, 22, Side::Left),
-        pad(standing_word(condition.standing), 16, Side::Left)
+    let text = wrap(
+        &format!("{accepted}{}", condition.evidence),
+        page,
+        EVIDENCE,
+        EVIDENCE,
     );
-    let deep = indent + 40;
-    let text = wrap(&condition.evidence, page, deep, deep);
-    out.push_str(&head);
-    if accepted.is_empty() {
-        out.push_str(text.trim_start_matches(' '));
-    } else {
-        out.push('\n');
-        out.push_str(&text);
-    }
+    out.push_str(text.trim_start_matches(' '));
 }
 
 fn capital(text: &str) -> String {

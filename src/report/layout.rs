@@ -129,7 +129,12 @@ pub(super) fn wrap(text: &str, page: usize, first: usize, later: usize) -> Strin
     let mut out = " ".repeat(first);
     let mut at = first;
     let mut fresh = true;
-    for word in text.split_whitespace() {
+    // A per cent sign stays with its number.
+    let text = text.replace(" %", "\u{a0}%");
+    for word in text
+        .split([' ', '\n', '\t'])
+        .filter(|word| !word.is_empty())
+    {
         if !fresh && at + 1 + width(word) > page {
             out.push('\n');
             out.push_str(&" ".repeat(later));
@@ -147,7 +152,7 @@ pub(super) fn wrap(text: &str, page: usize, first: usize, later: usize) -> Strin
                 out.push_str(&" ".repeat(later));
                 at = later;
             }
-            out.push(c);
+            out.push(if c == '\u{a0}' { ' ' } else { c });
             at += wide;
         }
         fresh = false;
@@ -196,6 +201,7 @@ mod tests {
 
     #[test]
     fn wrapping() {
+        assert_eq!(wrap("at 97.5 % now", 8, 0, 0), "at\n97.5 %\nnow\n");
         assert_eq!(wrap("one two three", 9, 2, 4), "  one two\n    three\n");
     }
 }

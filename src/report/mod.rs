@@ -6,6 +6,10 @@ mod figures;
 mod grounds_text;
 mod json;
 mod layout;
+#[cfg(test)]
+mod samples;
+#[cfg(test)]
+mod snapshots;
 mod sweep;
 mod text;
 

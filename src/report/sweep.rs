@@ -1,10 +1,13 @@
 //! A sweep as plain text: one line a point, the swept values, then value and Monte Carlo error of each
 //! quantity.
 
-use super::layout::{Column, Side, cell, table};
+use super::layout::{Column, Side, cell, table, wrap};
 use crate::canon::Json;
 use crate::estimates::{GoalState, Summary, count, figure};
 use crate::plan::Give;
+
+/// Names are broken at this width when they head a column.
+const HEADING: usize = 24;
 
 /// Tables over the first `rows` points, as many quantities at a time as the page holds.
 pub fn sweep_text(points: &[Summary], rows: usize, page: usize) -> String {
@@ -16,7 +19,8 @@ pub fn sweep_text(points: &[Summary], rows: usize, page: usize) -> String {
     let mut columns: Vec<Column> = Vec::new();
     for (name, unit) in quantities(points) {
         let unit = unit.map_or(String::new(), |u| format!("\n{u}"));
-        let mut column = Column::new(&format!("{name}{unit}"), Side::Right);
+        let heading = wrap(&name, HEADING, 0, 0);
+        let mut column = Column::new(&format!("{}{unit}", heading.trim_end()), Side::Right);
         column.cells = shown
             .iter()
             .map(|p| {
@@ -43,6 +47,9 @@ pub fn sweep_text(points: &[Summary], rows: usize, page: usize) -> String {
             out.push('\n');
         }
         out.push_str(&table(&block, page));
+    }
+    if out.contains("(?)") {
+        out.push_str("(?) no error; the reasons stand in summary.csv\n");
     }
     if shown.len() < points.len() {
         out.push_str(&format!(
