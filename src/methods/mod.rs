@@ -6,6 +6,7 @@
 mod choose;
 mod combine;
 mod conditional;
+mod conditions;
 mod covariance;
 mod declaration;
 mod gain;

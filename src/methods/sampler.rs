@@ -7,7 +7,7 @@ use super::kernel::Kernel;
 use super::random_walk::{Adapt, RandomWalk};
 use super::slice::Slice;
 use crate::canon::Json;
-use crate::course::{Condition, Coordinate, CoordinateKind, Standing};
+use crate::course::{Coordinate, CoordinateKind};
 use std::sync::Arc;
 
 /// A method with its settings, for coordinates of one kind.
@@ -199,46 +199,6 @@ impl Sampler {
             ("steps", Json::array(steps)),
         ])
     }
-
-    /// What the kernels can say before any draw.
-    pub fn conditions(&self) -> Vec<Condition> {
-        let moves = || self.steps.iter().flat_map(|step| &step.moves);
-        let mut names: Vec<&str> = moves().map(|m| m.settings.words()).collect();
-        names.dedup();
-        let adapts = moves().any(|m| m.settings.adapts());
-        let fixed = if adapts {
-            "what is adapted in burn-in is frozen before the first draw"
-        } else {
-            "nothing adapts"
-        };
-        vec![Condition {
-            name: "invariant",
-            standing: Standing::ByConstruction,
-            evidence: format!(
-                "{}: each leaves the target's law as it is, so their {} does; {fixed}",
-                names.join("; "),
-                if self.steps.iter().any(|s| s.weight.is_some()) {
-                    "mixture"
-                } else {
-                    "cycle"
-                },
-            ),
-        }]
-    }
-
-    /// Whether the whole kernel is reversible (needed by initial-sequence bounds; Geyer 1992): a single
-    /// Metropolis move, or a mixture of such. A sweep over coordinates in fixed order is not.
-    pub fn reversible(&self) -> bool {
-        let mixture = self.steps.iter().all(|step| step.weight.is_some());
-        (mixture || self.steps.len() == 1)
-            && self.steps.iter().all(|step| {
-                step.moves.len() == 1
-                    && step.moves.iter().all(|m| {
-                        matches!(m.settings, Settings::RandomWalk { .. })
-                            || m.coordinates.len() == 1
-                    })
-            })
-    }
 }
 
 fn one_or_cycle(mut parts: Vec<(String, Box<dyn Kernel>)>) -> Box<dyn Kernel> {
@@ -256,26 +216,6 @@ impl Settings {
             Settings::RandomWalk { .. } | Settings::IntegerWalk { .. } => "metropolis",
             Settings::Slice { .. } => "slice",
             Settings::Conditional => "conditional",
-        }
-    }
-
-    fn words(&self) -> &'static str {
-        match self {
-            Settings::RandomWalk { .. } => {
-                "Metropolis with normal steps (Metropolis et al. 1953; Roberts, Gelman & Gilks 1997)"
-            }
-            Settings::Slice { .. } => "slice sampling with stepping out and shrinkage (Neal 2003)",
-            Settings::Conditional => "draws from the full conditional (Geman & Geman 1984)",
-            Settings::IntegerWalk { .. } => "Metropolis with symmetric whole-number steps",
-        }
-    }
-
-    fn adapts(&self) -> bool {
-        match self {
-            Settings::RandomWalk { adapt, .. } => *adapt != Adapt::None,
-            Settings::Slice { .. } => true,
-            Settings::Conditional => false,
-            Settings::IntegerWalk { adapt, .. } => *adapt,
         }
     }
 

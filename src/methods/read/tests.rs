@@ -252,3 +252,26 @@ on = ["rate"]
         "{told:?}"
     );
 }
+
+#[test]
+fn what_is_reversible() {
+    let one = |text: &str| sound(text).reversible();
+    // All unknowns by one method: reals together, then each integer.
+    assert!(!one("[sampler]\nmethod = \"metropolis\""));
+    let step = |name: &str, on: &str, method: &str, weight: &str| {
+        format!(
+            "[[sampler.step]]\nname = \"{name}\"\non = [{on}]\nmethod = \"{method}\"\n{weight}\n"
+        )
+    };
+    let parts = |weight: &str| {
+        step("reals", "\"a\", \"rate\"", "metropolis", weight)
+            + &step("k", "\"k\"", "conditional", weight)
+            + &step("n", "\"n\"", "metropolis", weight)
+    };
+    assert!(!one(&parts("")));
+    assert!(one(&parts("weight = 1")));
+    let conditions = sound(&parts("weight = 1")).conditions();
+    let names: Vec<&str> = conditions.iter().map(|c| c.name).collect();
+    assert_eq!(names, ["invariant", "recurrent", "aperiodic", "reversible"]);
+    assert!(conditions[0].evidence.contains("Geman & Geman 1984"));
+}
