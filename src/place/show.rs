@@ -145,17 +145,14 @@ fn excerpt<'a>(group: Group<'a>, cluster: &[Mark<'a>]) -> Group<'a> {
             start..end.max(start)
         });
         let spans: Vec<std::ops::Range<usize>> = spans.collect();
-        let (shown, shift) = cut(written, &spans);
-        whole &= shown.len() == written.len();
+        let cut = Cut::of(written, spans.first().map(|span| span.start));
+        whole &= cut.whole(written);
         for (mark, span) in here.iter().zip(spans) {
-            let at = |offset: usize| {
-                let moved = offset.saturating_sub(shift.dropped) + shift.added;
-                text.len() + moved.min(shown.len())
-            };
+            let at = |offset: usize| text.len() + cut.moved(written, offset);
             let label = (!mark.label.is_empty()).then_some(mark.label);
             annotations.push(mark.kind.span(at(span.start)..at(span.end)).label(label));
         }
-        text.push_str(&shown);
+        text.push_str(&cut.shown);
         text.push('\n');
     }
     let snippet = Snippet::source(text)
@@ -171,44 +168,58 @@ fn excerpt<'a>(group: Group<'a>, cluster: &[Mark<'a>]) -> Group<'a> {
     group.element(origin).element(snippet)
 }
 
-struct Shift {
-    dropped: usize,
+/// A line, cut around a place in it if it is very long.
+struct Cut {
+    shown: String,
+    /// The bytes of the line that are shown.
+    kept: std::ops::Range<usize>,
+    /// Bytes shown before them.
     added: usize,
 }
 
-/// A line, cut around its marks if it is very long.
-fn cut(line: &str, marks: &[std::ops::Range<usize>]) -> (String, Shift) {
-    let whole = Shift {
-        dropped: 0,
-        added: 0,
-    };
-    let Some(start) = marks.iter().map(|mark| mark.start).min() else {
-        return match line.char_indices().nth(LONG) {
-            Some((at, _)) => (format!("{}…", &line[..at]), whole),
-            None => (line.to_string(), whole),
-        };
-    };
-    if line.chars().count() <= LONG {
-        return (line.to_string(), whole);
+impl Cut {
+    fn of(line: &str, mark: Option<usize>) -> Cut {
+        if line.chars().count() <= LONG {
+            return Cut {
+                shown: line.to_string(),
+                kept: 0..line.len(),
+                added: 0,
+            };
+        }
+        let start = boundary(line, mark.unwrap_or(0));
+        let before = line[..start].char_indices().rev().nth(AROUND);
+        let behind = line[start..].char_indices().nth(2 * AROUND);
+        let from = before.map_or(0, |(at, _)| at);
+        let to = behind.map_or(line.len(), |(at, _)| start + at);
+        let (head, tail) = (
+            if from > 0 { "…" } else { "" },
+            if to < line.len() { "…" } else { "" },
+        );
+        Cut {
+            shown: format!("{head}{}{tail}", &line[from..to]),
+            kept: from..to,
+            added: head.len(),
+        }
     }
-    let from = line[..start]
-        .char_indices()
-        .rev()
-        .nth(AROUND)
-        .map_or(0, |(at, _)| at);
-    let to = line[start..]
-        .char_indices()
-        .nth(2 * AROUND)
-        .map_or(line.len(), |(at, _)| start + at);
-    let before = if from > 0 { "…" } else { "" };
-    let behind = if to < line.len() { "…" } else { "" };
-    (
-        format!("{before}{}{behind}", &line[from..to]),
-        Shift {
-            dropped: from,
-            added: before.len(),
-        },
-    )
+
+    fn whole(&self, line: &str) -> bool {
+        self.kept == (0..line.len())
+    }
+
+    /// Where a byte of the line is in what is shown; what is cut off is at its ends.
+    fn moved(&self, line: &str, offset: usize) -> usize {
+        let offset = boundary(line, offset).clamp(self.kept.start, self.kept.end);
+        offset - self.kept.start + self.added
+    }
+}
+
+/// The last place between two characters up to `at`.
+fn boundary(text: &str, at: usize) -> usize {
+    let mut at = at.min(text.len());
+    while !text.is_char_boundary(at) {
+        at -= 1;
+    }
+    at
 }
 
 #[cfg(test)]
@@ -274,6 +285,19 @@ mod tests {
             shown(fault),
             "error: wrong\n --> study.toml:1:100001\n  |\n ::: \n1 | …äääääääääääääääääääääääääääääääääääääääääääääääääääääääääääääbadxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxxx...\n  |                                                               ^^^ here\n\n"
         );
+    }
+
+    #[test]
+    fn marks_far_apart_on_a_long_line() {
+        let file = source(&format!("{}bad{}worse", "ä".repeat(500), "ö".repeat(500)));
+        for (first, second) in [("bad", "worse"), ("worse", "bad")] {
+            let fault = Fault::at(place(&file, first), "wrong").related(place(&file, second), "");
+            assert!(shown(fault).contains(first));
+        }
+        // A place between the bytes of a character is moved to its start.
+        let mut inside = place(&file, "bad");
+        inside.span = 1..3;
+        assert!(shown(Fault::at(inside, "wrong")).contains("study.toml:1:1\n"));
     }
 
     #[test]

@@ -119,7 +119,7 @@ mod tests {
             more in 0_u64..1 << 53,
         ) {
             let block = block_length(cost, quantities, state, draws);
-            prop_assert!(1 <= block && block <= LONGEST && block <= draws);
+            prop_assert!((1..=LONGEST).contains(&block) && block <= draws);
             let reviews = reviews(&ensemble(draws), Some(&goal(draws.saturating_add(more))), block);
             prop_assert_eq!(reviews[0], draws);
             prop_assert_eq!(reviews[reviews.len() - 1], draws.saturating_add(more));

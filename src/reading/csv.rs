@@ -152,7 +152,10 @@ mod tests {
     use super::*;
     use proptest::prelude::*;
 
-    fn all(text: &str) -> Result<Vec<Vec<(String, Range<usize>)>>, Misquoted> {
+    /// The cells of a row with their places.
+    type Placed = Vec<(String, Range<usize>)>;
+
+    fn all(text: &str) -> Result<Vec<Placed>, Misquoted> {
         let mut rows = Rows::new(text);
         let mut row = Vec::new();
         let mut all = Vec::new();
