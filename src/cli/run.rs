@@ -198,3 +198,53 @@ impl Sink for Desk<'_> {
         self.progress.event(event);
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn every_halt_has_its_status_and_words() {
+        let words = || "x".to_owned();
+        let halts = [
+            (Halt::Interrupted, Status::Interrupted, "goes on"),
+            (Halt::Journal(words()), Status::Interrupted, "goes on"),
+            (Halt::Own(words()), Status::Own, "own fault"),
+            (
+                Halt::Start {
+                    point: 0,
+                    words: words(),
+                },
+                Status::Fault,
+                "x",
+            ),
+        ];
+        for (halt, status, part) in halts {
+            let (found, said) = halted(&halt);
+            assert_eq!(found, status);
+            assert!(said.contains(part), "{said}");
+        }
+    }
+
+    #[test]
+    fn every_fault_of_a_folder_has_its_status() {
+        let path = || "results/x".into();
+        let by = "process 7".to_owned();
+        let words = "x".to_owned();
+        let faults = [
+            (RecordFault::Held { path: path(), by }, Status::Interrupted),
+            (RecordFault::Disk("x".into()), Status::Interrupted),
+            (RecordFault::Input("x".into()), Status::Fault),
+            (
+                RecordFault::Foreign {
+                    path: path(),
+                    words,
+                },
+                Status::Fault,
+            ),
+        ];
+        for (fault, status) in faults {
+            assert_eq!(tell_record(&fault), status);
+        }
+    }
+}
