@@ -20,7 +20,7 @@ const STUDIES: [&str; 6] = ["walk", "slice", "cycle", "mixture", "draws", "funct
 
 fn plan(name: &str) -> Plan {
     let file = root().join("tests/digits").join(format!("{name}.toml"));
-    odograph::study::resolve(&file, odograph::cli::FAMILIES)
+    odograph::study::resolve(&file, &odograph::cli::FAMILIES)
         .unwrap_or_else(|faults| panic!("{name}: {faults:#?}"))
 }
 

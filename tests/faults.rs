@@ -133,7 +133,7 @@ fn expect_fault(folder: &Path, name: &str, words: &[&str]) {
     assert!(!message.contains("panicked"), "{message}");
 }
 
-const SOUND: &str = "title = \"Sound\"\n\n[data.t]\nfile = \"t.csv\"\n\n[model]\nfamily = \"density\"\n\n\
+const SOUND: &str = "title = \"Sound\"\n\n[seeds]\nroot = 1\n\n[data.t]\nfile = \"t.csv\"\n\n[model]\nfamily = \"density\"\n\n\
     [model.observed]\ny = { of = \"t.y\", law = \"normal(mean = a, sd = 1)\" }\n\n\
     [model.unknown]\na = { law = \"normal(mean = 0, sd = 1)\" }\n\n[[estimand]]\nname = \"a\"\n";
 const DATA: &str = "y\n0.5\n1.5\n";
@@ -190,6 +190,20 @@ fn a_study_of_two_gigabytes() {
     // A hole: no room on the disk is taken, and none in memory may be.
     file.set_len(2_000_000_000).expect("a long file");
     expect_fault(folder.path(), "study.toml", &["study.toml"]);
+}
+
+/// Only a run can know it where the support hangs on other unknowns: it must not get as far as a draw.
+#[test]
+fn a_stated_start_outside_the_support() {
+    let study = SOUND.replace("normal(mean = 0, sd = 1)", "gamma(shape = 2, rate = 1)")
+        + "\n[ensemble]\nstart = { at = { a = -1 } }\n";
+    let folder = lay(study.as_bytes(), DATA.as_bytes());
+    let output = odograph(folder.path(), &["run", "study.toml", "--into", "results"]);
+    let message = text(&output.stderr);
+    assert_eq!(output.status.code(), Some(1), "{message}");
+    for word in ["`a`", "-1", "support", "gamma"] {
+        assert!(message.contains(word), "no {word:?} in:\n{message}");
+    }
 }
 
 #[test]

@@ -29,9 +29,7 @@ pub fn read(file: &Path) -> Result<Read, Status> {
         let plan = crate::study::resolve_text(source, folder, &FAMILIES)?;
         Ok(Read { plan, bytes })
     };
-    let read = resolved().map_err(|faults| tell_faults(&faults))?;
-    unknown_conditions(&read.plan)?;
-    Ok(read)
+    resolved().map_err(|faults| tell_faults(&faults))
 }
 
 fn tell_faults(faults: &[Fault]) -> Status {
@@ -54,23 +52,6 @@ fn tell_faults(faults: &[Fault]) -> Status {
 )]
 fn no_colour() -> bool {
     std::env::var_os("NO_COLOR").is_some_and(|value| !value.is_empty())
-}
-
-/// `[grounds] accept` may name conditions only.
-fn unknown_conditions(plan: &Plan) -> Result<(), Status> {
-    let grounds = grounds(&[], None, &plan.accepted);
-    let unknown = grounds.not_conditions();
-    for (name, near) in &unknown {
-        let near = near.map_or(String::new(), |near| format!("; did you mean `{near}`?"));
-        tell(&format!(
-            "[grounds] accept: `{name}` is not a condition{near}"
-        ));
-    }
-    if unknown.is_empty() {
-        Ok(())
-    } else {
-        Err(Status::Fault)
-    }
 }
 
 /// The grounds of a point of a plan, with what its draws add once it has run.

@@ -1,7 +1,9 @@
 //! Course, Target, Block, Condition, Standing; how a family declares itself and reads its section.
 
+mod conditions;
 mod family;
 
+pub use conditions::CONDITIONS;
 pub use family::{EstimandSpec, Family, Request, StartSpec};
 
 use crate::canon::Json;

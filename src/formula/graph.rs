@@ -231,7 +231,7 @@ impl Graph {
     pub fn matrix(&mut self, rows: Arc<Axis>, columns: Vec<Arc<[f64]>>) -> Matrix {
         assert!(
             columns.iter().all(|c| c.len() == rows.len),
-            "one value a row in each column"
+            "one value per row in each column"
         );
         let same = |m: &MatrixData| m.rows == rows && m.columns == columns;
         if let Some(at) = self.matrices.iter().position(same) {

@@ -103,6 +103,9 @@ impl Parser<'_> {
             if *self.word() == Word::Is {
                 fault = fault.help("write `==` to compare");
             }
+            if *self.word() == Word::Comma {
+                fault = fault.help("write decimals with a point; a comma stands between arguments");
+            }
             fault
         };
         self.fault(fault)

@@ -151,11 +151,11 @@ impl Shape {
         }
     }
 
-    /// "one value", "one value a row of stations".
+    /// "one value", "one value per row of stations".
     pub fn words(&self) -> String {
         match self {
             Shape::Number => "one value".into(),
-            Shape::Vector(axis) => format!("one value a {}", axis.element()),
+            Shape::Vector(axis) => format!("one value per {}", axis.element()),
         }
     }
 }

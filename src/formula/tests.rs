@@ -324,7 +324,7 @@ fn faults_say_where_and_what_would_be_right() {
     );
     fault(
         "effect + t.y",
-        "t.y | `effect` has one value a level of t.site, `t.y` one a row of t | write `effect[t.site]`",
+        "t.y | `effect` has one value per level of t.site, `t.y` one per row of t | write `effect[t.site]`",
     );
     fault(
         "t.height",
@@ -357,7 +357,7 @@ fn faults_say_where_and_what_would_be_right() {
     );
     fault(
         "dot(t.x, rate)",
-        "rate | `rate` has 4 values, but `t.x` has 2 columns | an unknown declared with `per = \"t.x\"` has one value a column",
+        "rate | `rate` has 4 values, but `t.x` has 2 columns | an unknown declared with `per = \"t.x\"` has one value per column",
     );
     fault(
         "log_density(normal(mean = 1, std = 2), 1)",

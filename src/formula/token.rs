@@ -196,6 +196,9 @@ pub(super) fn tokens(text: &Text, faults: &mut Faults) -> Option<Vec<Token>> {
             '|' => Some("write `or`".to_string()),
             '~' => Some("laws are given under [model.unknown] and [model.observed]".to_string()),
             '{' | '}' => Some("use round brackets".to_string()),
+            c if c.is_alphabetic() => {
+                Some("names consist of the letters a to z, digits and _".to_string())
+            }
             _ => None,
         };
         wrong(

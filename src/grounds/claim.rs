@@ -1,6 +1,6 @@
 //! The three claims, and what follows from their standing.
 
-use super::condition::{CONDITIONS, said, stronger, weaker};
+use super::condition::{said, stronger, weaker};
 use super::evidence::weigh;
 use crate::course::{Condition, Standing};
 use crate::estimates::Summary;
@@ -160,17 +160,6 @@ impl Grounds {
     pub fn accepts(&self, name: &str) -> bool {
         self.accepted.conditions.iter().any(|a| a == name)
     }
-
-    /// Accepted names that are no condition, each with the nearest known one.
-    pub fn not_conditions(&self) -> Vec<(&str, Option<&'static str>)> {
-        let known = || CONDITIONS.iter().map(|(name, _)| *name);
-        self.accepted
-            .conditions
-            .iter()
-            .filter(|a| known().all(|name| name != a.as_str()))
-            .map(|a| (a.as_str(), crate::place::nearest(a, known())))
-            .collect()
-    }
 }
 
 #[cfg(test)]
@@ -289,13 +278,12 @@ mod tests {
             ["irreducible"]
         );
         let accepted = Accepted {
-            conditions: vec!["irreducible".into(), "irreducable".into()],
+            conditions: vec!["irreducible".into()],
             because: "only one class matters here".into(),
         };
         let g = grounds(&model, None, &accepted);
         assert!(g.stops().is_empty());
         assert_eq!(g.failed().len(), 1);
-        assert_eq!(g.not_conditions(), [("irreducable", Some("irreducible"))]);
     }
 
     #[test]

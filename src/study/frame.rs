@@ -1,7 +1,8 @@
 //! What a study says of itself, the same at every point: title, question, root of the streams, what is kept,
 //! what is accepted.
 
-use crate::place::{Fault, Faults, Text};
+use crate::course::CONDITIONS;
+use crate::place::{Fault, Faults, Text, nearest};
 use crate::plan::{Accepted, Keep};
 use crate::reading::{Content, Section};
 
@@ -109,6 +110,21 @@ fn accepted(root: &Section, faults: &mut Faults) -> Option<Accepted> {
             .and_then(|value| value.text(faults))
     };
     grounds.finish(faults);
+    for text in &conditions {
+        let known = || CONDITIONS.iter().map(|(name, _)| *name);
+        if known().any(|name| name == text.text) {
+            continue;
+        }
+        let what = format!("`{}` is not a condition that figures rest on", text.text);
+        let fault = Fault::at(text.place.clone(), what).label("not known here");
+        faults.push(match nearest(&text.text, known()) {
+            Some(near) => fault.help(format!("did you mean `{near}`?")),
+            None => {
+                let names: Vec<String> = known().map(|name| format!("`{name}`")).collect();
+                fault.help(format!("the conditions are {}", names.join(", ")))
+            }
+        });
+    }
     let mut conditions: Vec<String> = conditions.into_iter().map(|text| text.text).collect();
     conditions.sort();
     conditions.dedup();

@@ -9,7 +9,7 @@ use std::sync::Arc;
 pub const CHAINS: usize = 8;
 
 pub fn resolve(file: &Path) -> Plan {
-    odograph::study::resolve(file, odograph::cli::FAMILIES)
+    odograph::study::resolve(file, &odograph::cli::FAMILIES)
         .unwrap_or_else(|faults| panic!("{}: {faults:#?}", file.display()))
 }
 

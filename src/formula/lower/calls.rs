@@ -275,7 +275,7 @@ impl Lowering<'_> {
                 )
                 .label(vector.shape.words())
                 .help(format!(
-                    "an unknown declared with `per = \"{a}\"` has one value a column"
+                    "an unknown declared with `per = \"{a}\"` has one value per column"
                 )),
             );
             return None;

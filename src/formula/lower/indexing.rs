@@ -109,7 +109,7 @@ impl Lowering<'_> {
                 Fault::at(
                     place.clone(),
                     format!(
-                        "`{of}` has one value a {} and takes one index",
+                        "`{of}` has one value per {} and takes one index",
                         axis.element()
                     ),
                 )
@@ -138,7 +138,7 @@ impl Lowering<'_> {
             self.fault(
                 Fault::at(
                     at[0].place.clone(),
-                    format!("`{of}` has one value a {}", axis.element()),
+                    format!("`{of}` has one value per {}", axis.element()),
                 )
                 .label("one column")
                 .help("write two columns of labels: `cross[t.a, t.b]`"),

@@ -5,6 +5,42 @@ use crate::laws::{Domain, Law};
 
 impl Lowering<'_> {
     pub(super) fn law(&mut self, expr: &Expr) -> Option<LawTerm> {
+        let law = self.law_as_written(expr)?;
+        self.leaves_room(&law).then_some(law)
+    }
+
+    /// A law whose support is known to be empty has no value to take.
+    fn leaves_room(&mut self, law: &LawTerm) -> bool {
+        let (lower, upper) = law.support(self.graph);
+        let known = (
+            self.graph.known_values(lower),
+            self.graph.known_values(upper),
+        );
+        let (Some(lower), Some(upper)) = known else {
+            return true;
+        };
+        let at = |ends: &[f64], i: usize| ends.get(i).or(ends.first()).copied();
+        let integer = law.law.support().integer;
+        let empty = (0..lower.len().max(upper.len())).find_map(|i| {
+            let (low, high) = (at(&lower, i)?, at(&upper, i)?);
+            (low > high || (low == high && !integer)).then_some((low, high))
+        });
+        if let Some((low, high)) = empty {
+            self.fault(
+                Fault::at(
+                    law.place.clone(),
+                    format!("this law has no value: none lies between {low} and {high}"),
+                )
+                .label("nothing between its ends")
+                .help(
+                    "the lower end must lie below the upper one, and both where the law has mass",
+                ),
+            );
+        }
+        empty.is_none()
+    }
+
+    fn law_as_written(&mut self, expr: &Expr) -> Option<LawTerm> {
         let Form::Call(call) = &expr.form else {
             let mut fault = Fault::at(expr.place.clone(), format!("`{expr}` is not a law"))
                 .label("a law is needed")
@@ -121,7 +157,8 @@ impl Lowering<'_> {
         if !unknown {
             let shared =
                 |law: &&&'static dyn Law| law.parameters().iter().filter(|p| given(p.name)).count();
-            let closest = entries.iter().max_by_key(shared)?;
+            // Of several that fit as well, the first of the table.
+            let closest = entries.iter().rev().max_by_key(shared)?;
             let missing: Vec<&str> = closest
                 .parameters()
                 .iter()

@@ -224,7 +224,7 @@ impl Lowering<'_> {
                         place.clone(),
                         format!("`{}.{column}` is a matrix of columns", table.name),
                     )
-                    .label("not one value a row")
+                    .label("not one value per row")
                     .help(format!(
                         "a matrix stands in a product: `dot({}.{column}, beta)`",
                         table.name
@@ -362,15 +362,15 @@ impl Lowering<'_> {
                 continue;
             }
             let what = format!(
-                "`{other_expr}` has one value a {}, `{expr}` one a {}",
+                "`{other_expr}` has one value per {}, `{expr}` one per {}",
                 other.element(),
                 axis.element()
             );
             let mut fault = Fault::at(expr.place.clone(), what)
-                .label(format!("one value a {}", axis.element()))
+                .label(format!("one value per {}", axis.element()))
                 .related(
                     other_expr.place.clone(),
-                    format!("one value a {}", other.element()),
+                    format!("one value per {}", other.element()),
                 );
             fault.help = spread_advice(other_expr, other, axis)
                 .or_else(|| spread_advice(expr, axis, other))

@@ -49,6 +49,8 @@ pub struct ObservedEntry {
 pub struct Declared {
     pub constants: Vec<(Text, f64)>,
     pub unknowns: Vec<LawEntry>,
+    /// [model.unknown] has no entry at all, not even one at fault.
+    pub none_named: bool,
     pub definitions: Vec<FormulaEntry>,
     pub observed: Vec<ObservedEntry>,
     pub terms: Vec<FormulaEntry>,
@@ -67,7 +69,9 @@ impl Declared {
                 declared.constants.push((name, number));
             }
         }
-        for (name, value) in entries(model, "unknown", faults) {
+        let unknowns = entries(model, "unknown", faults);
+        declared.none_named = unknowns.is_empty();
+        for (name, value) in unknowns {
             declared.unknowns.extend(law_entry(name, &value, faults));
         }
         for (name, value) in entries(model, "define", faults) {

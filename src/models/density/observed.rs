@@ -56,6 +56,13 @@ pub fn observe(
     }
     let exact = right.is_none() && left.is_none() && interval.is_none();
     check_support(entry, &of, &law, exact, graph, faults);
+    check_rows(
+        entry,
+        &of,
+        [interval, upper, entered, weight],
+        graph,
+        faults,
+    );
 
     let mut row = law.log_density(graph, of.value);
     if let Some(where_) = left {
@@ -77,7 +84,11 @@ pub fn observe(
     }
     if let Some(entered) = entered {
         let alive = cumulative(&law.ln_survival(graph, entered), entry, &law, faults)?;
-        row = graph.binary(Binary::Subtract, row, alive);
+        let given = graph.binary(Binary::Subtract, row, alive);
+        // Nothing that ended before it was under observation can have been seen.
+        let seen = graph.binary(Binary::LessEqual, entered, of.value);
+        let never = graph.constant(f64::NEG_INFINITY);
+        row = graph.ternary(Ternary::Select, seen, given, never);
     }
     if let Some(weight) = weight {
         // A row of weight 0 takes no part, even where its density is 0.
@@ -144,6 +155,88 @@ fn checked(
     Some(term.value)
 }
 
+/// Rows that contradict themselves: an interval that ends before it begins, an entry after the end, a weight
+/// below 0. Found before any draw where both sides are data.
+fn check_rows(
+    entry: &ObservedEntry,
+    of: &Term,
+    [interval, upper, entered, weight]: [Option<Value>; 4],
+    graph: &Graph,
+    faults: &mut Faults,
+) {
+    let known = |value: Option<Value>| graph.known_values(value?);
+    let at = |values: &[f64], i: usize| values.get(i).or(values.first()).copied();
+    let of_values = known(Some(of.value));
+    let mut check = |expr: &Option<Expr>,
+                     values: Option<Value>,
+                     wrong: &dyn Fn(usize, f64) -> Option<String>,
+                     help: &str| {
+        let (Some(expr), Some(values)) = (expr, known(values)) else {
+            return;
+        };
+        let found: Vec<(usize, String)> = (0..of.shape.len())
+            .filter_map(|i| Some((i, wrong(i, at(&values, i)?)?)))
+            .collect();
+        let Some((i, why)) = found.first() else {
+            return;
+        };
+        let fault = Fault::at(
+            expr.place.clone(),
+            format!(
+                "{} of `{}`: {why}{}",
+                which(&of.shape, *i),
+                entry.name.text,
+                more(found.len())
+            ),
+        )
+        .label("contradicts the row")
+        .help(help);
+        faults.push(fault);
+    };
+    let own = |i: usize| at(of_values.as_deref()?, i);
+    check(
+        &entry.entered,
+        entered,
+        &|i, entered| {
+            let of = own(i)?;
+            (entered > of).then(|| format!("`entered`, {entered}, lies after `of`, {of}"))
+        },
+        "what ended before it was under observation can't have been seen: mend the data, or leave the row out",
+    );
+    let intervals = known(interval);
+    check(
+        &entry.upper,
+        upper,
+        &|i, upper| {
+            let of = own(i)?;
+            let one = at(intervals.as_deref()?, i)? != 0.0;
+            (one && upper <= of).then(|| format!("`upper`, {upper}, does not lie above `of`, {of}"))
+        },
+        "an interval runs from `of` up to `upper`: mend the data",
+    );
+    check(
+        &entry.weight,
+        weight,
+        &|_, weight| (weight < 0.0).then(|| format!("`weight` is {weight}")),
+        "a weight is 0 or more: how often the row counts",
+    );
+}
+
+/// "row 3", "row \"Cawdle\"", or "the value".
+fn which(shape: &Shape, i: usize) -> String {
+    match shape {
+        Shape::Number => "the value".to_string(),
+        shape => super::axis::element_name("row ", shape, i).replace(['[', ']'], ""),
+    }
+}
+
+fn more(count: usize) -> String {
+    match count {
+        1 => String::new(),
+        n => format!(" (and {} more)", n - 1),
+    }
+}
+
 /// Observed values that the law gives no mass to whatever the unknowns are: a slip, found before any draw.
 fn check_support(
     entry: &ObservedEntry,
@@ -180,14 +273,7 @@ fn check_support(
     let Some((i, value, why)) = wrong.first() else {
         return;
     };
-    let which = match &of.shape {
-        Shape::Number => "the value".to_string(),
-        shape => super::axis::element_name("row ", shape, *i).replace(['[', ']'], ""),
-    };
-    let more = match wrong.len() {
-        1 => String::new(),
-        n => format!(" (and {} more)", n - 1),
-    };
+    let (which, more) = (which(&of.shape, *i), more(wrong.len()));
     let fault = Fault::at(
         entry.of.place.clone(),
         format!(

@@ -47,7 +47,7 @@ impl Posterior {
     ) -> Option<Posterior> {
         let before = faults.0.len();
         unique_names(declared, tables, faults);
-        if declared.unknowns.is_empty() {
+        if declared.none_named {
             let fault = Fault::at(model.clone(), "the model has no unknown")
                 .label("nothing to draw")
                 .help("declare at least one under [model.unknown], such as a = { law = \"normal(mean = 0, sd = 1)\" }");

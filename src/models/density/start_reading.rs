@@ -31,20 +31,31 @@ pub fn read(spec: &StartSpec, posterior: &Posterior, faults: &mut Faults) -> Opt
             .map(|row| row.keys().map(String::as_str).collect())
             .unwrap_or_default(),
     };
-    let flat: Vec<&str> = (posterior.unknowns.iter())
+    let flat: Vec<&Unknown> = (posterior.unknowns.iter())
         .filter(|unknown| !unknown.proper && !stated.contains(&unknown.name.as_str()))
-        .map(|unknown| unknown.name.as_str())
         .collect();
-    if !flat.is_empty() {
-        let values: Vec<String> = flat.iter().map(|name| format!("{name} = …")).collect();
-        let fault = Fault::whole(format!(
-            "`{}` has a flat law, from which no start can be drawn",
-            flat.join("`, `")
-        ))
-        .help(format!(
-            "state one: [ensemble] start = {{ at = {{ {} }} }}",
-            values.join(", ")
-        ));
+    if let Some((first, others)) = flat.split_first() {
+        let values: Vec<String> = flat.iter().map(|u| format!("{} = …", u.name)).collect();
+        let names: Vec<&str> = flat.iter().map(|u| u.name.as_str()).collect();
+        let what = match others {
+            [] => format!(
+                "`{}` has a flat law, from which no start can be drawn",
+                first.name
+            ),
+            _ => format!(
+                "`{}` have flat laws, from which no start can be drawn",
+                names.join("`, `")
+            ),
+        };
+        let mut fault = Fault::at(first.place.clone(), what)
+            .label("a law of infinite mass")
+            .help(format!(
+                "state one: [ensemble] start = {{ at = {{ {} }} }}",
+                values.join(", ")
+            ));
+        for other in others {
+            fault = fault.related(other.place.clone(), "another");
+        }
         faults.push(fault);
     }
     (faults.0.len() == before).then_some(start)

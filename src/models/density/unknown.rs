@@ -8,7 +8,7 @@ use crate::course::{Coordinate, CoordinateKind};
 use crate::formula::{Graph, Kind, LawTerm, Program, Shape, Term, lower_law};
 use crate::laws::{Algebra, Value};
 use crate::maths::Binary;
-use crate::place::{Fault, Faults};
+use crate::place::{Fault, Faults, Place};
 use crate::reading::Table;
 use std::collections::BTreeMap;
 use std::sync::Arc;
@@ -24,8 +24,9 @@ pub struct Unknown {
     pub integer: bool,
     /// False for flat laws.
     pub proper: bool,
-    /// The law's name, for messages.
+    /// The law's name and where it is written, for messages.
     pub law: &'static str,
+    pub place: Place,
     /// From all coordinates and, for each element, a probability: the coordinates at which the law's
     /// quantile lies. `None` for laws without finite mass.
     pub at_quantile: Option<Program>,
@@ -148,6 +149,7 @@ pub fn put(named: Named, law: &LawTerm, graph: &mut Graph) -> Placed {
         integer,
         proper: law.law.proper(),
         law: law.law.name(),
+        place: law.place.clone(),
         at_quantile,
         at_value,
     };
