@@ -17,6 +17,40 @@ pub(super) fn of(node: &Node) -> f64 {
     }
 }
 
+/// Whether an operation on one number is done faster lane by lane than in eight lanes at once.
+pub(super) fn is_slow_unary(op: Unary) -> bool {
+    matches!(
+        op,
+        Unary::Sin
+            | Unary::Cos
+            | Unary::Tan
+            | Unary::Asin
+            | Unary::Acos
+            | Unary::Atan
+            | Unary::Sinh
+            | Unary::Cosh
+            | Unary::LnGamma
+            | Unary::Digamma
+            | Unary::Erf
+            | Unary::Erfc
+            | Unary::NormalCdf
+            | Unary::LnNormalCdf
+            | Unary::NormalQuantile
+    )
+}
+
+pub(super) fn is_slow_binary(op: Binary) -> bool {
+    matches!(
+        op,
+        Binary::GammaP
+            | Binary::GammaQ
+            | Binary::LnGammaP
+            | Binary::LnGammaQ
+            | Binary::GammaQuantile
+            | Binary::LnBeta
+    )
+}
+
 fn unary(op: Unary) -> f64 {
     match op {
         Unary::Negate

@@ -126,6 +126,8 @@ pub(super) struct Memory {
     pub wide: bool,
     /// Packs a block: a divisor of a chunk of a sum.
     pub block: usize,
+    /// [`WIDTH`], where the compiler is not to know it.
+    pub width: usize,
 }
 
 impl Memory {
@@ -157,6 +159,7 @@ impl Memory {
             partials: vec![Partial::new(); reductions],
             wide,
             block,
+            width: std::hint::black_box(WIDTH),
         }
     }
 }

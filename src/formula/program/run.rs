@@ -3,7 +3,7 @@
 use super::super::graph::position;
 use super::memory::{Memory, Pack, Partial, WIDTH, spread_data};
 use super::tape::{Loop, NOWHERE, RowStep, Step, Tape, Tiles};
-use crate::maths::CHUNK;
+use crate::maths::{CHUNK, Unary};
 
 /// Does all steps. `live` is the number of lanes in use.
 #[multiversion::multiversion(targets(
@@ -13,6 +13,12 @@ use crate::maths::CHUNK;
 pub(super) fn run(tape: &Tape, memory: &mut Memory, live: usize) {
     for step in &tape.steps {
         match step {
+            Step::Unary(Unary::Tanh, out, a) => {
+                // Of a length unknown to the compiler, which else takes the eight apart and branches in each.
+                let a = memory.scalars[*a].0;
+                let width = memory.width;
+                Unary::Tanh.slice(&a[..width], &mut memory.scalars[*out].0[..width]);
+            }
             Step::Unary(op, out, a) => {
                 let a = memory.scalars[*a].0;
                 op.slice(&a, &mut memory.scalars[*out].0);
@@ -29,15 +35,9 @@ pub(super) fn run(tape: &Tape, memory: &mut Memory, live: usize) {
                 );
                 op.slice(&a, &b, &c, &mut memory.scalars[*out].0);
             }
-            Step::Call(function, out, arguments) => {
-                let [a, b, c] = arguments.map(|a| memory.scalars[a].0);
-                let mut result = [0.0; WIDTH];
-                for lane in 0..live {
-                    result[lane] = (function.evaluate)(a[lane], b[lane], c[lane]);
-                }
-                let first = result[0];
-                result[live..].fill(first);
-                memory.scalars[*out].0 = result;
+            Step::Slow(slow, out, operands) => {
+                let operands = operands.each_ref().map(|a| &memory.scalars[*a].0);
+                memory.scalars[*out].0 = slow.lanes(operands, live);
             }
             Step::Element(out, store, at) => {
                 memory.scalars[*out] = if memory.wide {

@@ -6,8 +6,11 @@
 use super::super::graph::{Graph, Node, position};
 use super::super::shape::Axis;
 use super::cost;
-use super::tape::{Loop, NOWHERE, Output, RowStep, Scalar, Step, Store, StoreForm, Tape, Tiles};
+use super::tape::{
+    Loop, NOWHERE, Output, RowStep, Scalar, Slow, Step, Store, StoreForm, Tape, Tiles,
+};
 use crate::laws::Value;
+use crate::maths::Ternary;
 use std::collections::BTreeMap;
 use std::sync::Arc;
 
@@ -280,6 +283,16 @@ impl<'a> Schedule<'a> {
             | Node::Data(_)
             | Node::Reduce(..)
             | Node::Dot(..) => return,
+            Node::Unary(op, a) if cost::is_slow_unary(op) => {
+                self.slow(v, Slow::Unary(op), [a, a, a])
+            }
+            Node::Binary(op, a, b) if cost::is_slow_binary(op) => {
+                self.slow(v, Slow::Binary(op), [a, b, b])
+            }
+            Node::Ternary(op, a, b, c) if op != Ternary::Select => {
+                self.slow(v, Slow::Ternary(op), [a, b, c])
+            }
+            Node::Call(function, a, b, c) => self.slow(v, Slow::Call(function), [a, b, c]),
             Node::Unary(op, a) => Step::Unary(op, self.scalar[&v], self.scalar[&a]),
             Node::Binary(op, a, b) => {
                 Step::Binary(op, self.scalar[&v], self.scalar[&a], self.scalar[&b])
@@ -290,11 +303,6 @@ impl<'a> Schedule<'a> {
                 self.scalar[&a],
                 self.scalar[&b],
                 self.scalar[&c],
-            ),
-            Node::Call(function, a, b, c) => Step::Call(
-                function,
-                self.scalar[&v],
-                [a, b, c].map(|a| self.scalar[&a]),
             ),
             Node::Element(a, at) => {
                 let store = self.whole_store(a);
@@ -308,6 +316,10 @@ impl<'a> Schedule<'a> {
         };
         self.tape.cost += cost::of(&self.graph.node(v));
         self.tape.steps.push(step);
+    }
+
+    fn slow(&self, v: Value, slow: Slow, operands: [Value; 3]) -> Step {
+        Step::Slow(slow, self.scalar[&v], operands.map(|a| self.scalar[&a]))
     }
 
     /// The vector that a needed reduction at this level's loops works on.

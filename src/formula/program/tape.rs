@@ -57,12 +57,40 @@ pub(super) enum Step {
     Unary(Unary, Scalar, Scalar),
     Binary(Binary, Scalar, Scalar, Scalar),
     Ternary(Ternary, Scalar, Scalar, Scalar, Scalar),
-    Call(&'static Function, Scalar, [Scalar; 3]),
+    /// An operation that takes long and knows no vectors, lane by lane: only in the lanes in use.
+    Slow(Slow, Scalar, [Scalar; 3]),
     /// One element, from 0, of a whole vector.
     Element(Scalar, Store, usize),
     /// An element of a whole vector by its number from 1.
     Pick(Scalar, Store, usize, Scalar),
     Loop(Loop),
+}
+
+#[derive(Debug, Clone, Copy)]
+pub(super) enum Slow {
+    Unary(Unary),
+    Binary(Binary),
+    Ternary(Ternary),
+    Call(&'static Function),
+}
+
+impl Slow {
+    /// The value in the lanes in use, that of the first in the others.
+    #[inline(never)]
+    pub fn lanes(self, [a, b, c]: [&[f64; 8]; 3], live: usize) -> [f64; 8] {
+        let mut out = [0.0; 8];
+        for (lane, out) in out.iter_mut().enumerate().take(live) {
+            *out = match self {
+                Slow::Unary(op) => op.apply(a[lane]),
+                Slow::Binary(op) => op.apply(a[lane], b[lane]),
+                Slow::Ternary(op) => op.apply(a[lane], b[lane], c[lane]),
+                Slow::Call(function) => (function.evaluate)(a[lane], b[lane], c[lane]),
+            };
+        }
+        let first = out[0];
+        out[live..].fill(first);
+        out
+    }
 }
 
 /// All rows of one axis, block after block.
