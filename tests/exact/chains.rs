@@ -9,6 +9,9 @@ use odograph::random::{Purpose, Stream};
 /// Builds a kernel for so many lanes.
 pub type Maker<'a> = &'a dyn Fn(usize) -> Box<dyn Kernel>;
 
+/// A number read off a state.
+pub type Of<'a> = &'a dyn Fn(&[f64]) -> f64;
+
 pub const LANES: usize = 16;
 
 /// A stream of its own for each number.

@@ -1,6 +1,6 @@
 //! Faults planted on purpose, which the tests of the stationary law must catch.
 
-use crate::chains::{LANES, exact_start, point, stationary, stream};
+use crate::chains::{LANES, Maker, exact_start, point, stationary, stream};
 use crate::rank::rank_chance;
 use crate::targets::{Counts, Law, Lockstep, LogGamma, Standard, TwoHumps, normal};
 use odograph::course::{Phase, State, Target};
@@ -120,7 +120,7 @@ fn adaptation_after_burn_in() {
         let bounds = vec![(Some(0), None)];
         Box::new(IntegerWalk::new(vec![0], bounds, 1, 1.0, true, lanes))
     };
-    let cases: [(&str, &dyn Law, &dyn Fn(usize) -> Box<dyn Kernel>); 3] = [
+    let cases: [(&str, &dyn Law, Maker); 3] = [
         ("walk", &TwoHumps, &walk),
         ("slice", &TwoHumps, &slice),
         ("counts", &Counts, &counts),

@@ -1,6 +1,6 @@
 //! Every kernel leaves its target's law as it is.
 
-use crate::chains::{Maker, stationary};
+use crate::chains::{Maker, Of, stationary};
 use crate::rank::rank_chance;
 use crate::targets::{Classes, Correlated, Counts, Law, LogGamma, Standard, TwoHumps, coordinates};
 use odograph::course::Phase;
@@ -19,7 +19,7 @@ fn check(what: &str, law: &dyn Law, maker: Maker, steps: usize) {
 }
 
 fn check_ranks(what: &str, law: &dyn Law, maker: Maker) {
-    let functions: [&dyn Fn(&[f64]) -> f64; 3] = [&|x| x[0], &|x| law.log_density(x), &|x| {
+    let functions: [Of; 3] = [&|x| x[0], &|x| law.log_density(x), &|x| {
         (x[0] - 1.0) * (x[0] - 1.0)
     }];
     for of in functions {

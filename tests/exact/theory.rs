@@ -1,7 +1,7 @@
 //! Acceptance rates and autocorrelation times against theory; the figures are in
 //! `tests/reference/09_sampler_theory.toml` with their sources (Roberts, Gelman & Gilks 1997; Glauber 1963 …).
 
-use crate::chains::{exact_start, point};
+use crate::chains::{Of, exact_start, point};
 use crate::targets::{Law, Lockstep, Standard};
 use odograph::course::{CoordinateKind, Phase};
 use odograph::maths;
@@ -87,7 +87,7 @@ fn autocorrelation_times_of_the_random_walk_on_a_normal() {
     for entry in entries(&reference, "random_walk_iact") {
         let scale = real(entry, "proposal_sd");
         let (lanes, steps) = (4096, 1000);
-        let cases: [(&str, &dyn Fn(&[f64]) -> f64, f64, f64); 2] = [
+        let cases: [(&str, Of, f64, f64); 2] = [
             ("tau_x", &|x| x[0], 0.0, 1.0),
             ("tau_x_squared", &|x| x[0] * x[0], 1.0, 2.0),
         ];
@@ -199,8 +199,7 @@ fn autocorrelation_times_of_the_heat_bath() {
             } else {
                 Box::new(Mixture::new(sites, vec![1.0; SPINS], lanes))
             };
-            let cases: [(&str, &dyn Fn(&[f64]) -> f64); 2] =
-                [("tau_E", &bonds), ("tau_M", &magnetisation)];
+            let cases: [(&str, Of); 2] = [("tau_E", &bonds), ("tau_M", &magnetisation)];
             for (name, of) in cases {
                 let means = chain_means(&law, kernel.as_mut(), lanes, steps, of);
                 let (expectation, variance) = law.moments(of);
