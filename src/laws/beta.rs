@@ -42,7 +42,9 @@ impl Written for Beta {
         q.beta_quantile(p[0], p[1])
     }
     fn upper_quantile<'p>(&self, s: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-        1.0 - s.beta_quantile(p[1], p[0])
+        let high = 1.0 - s.beta_quantile(p[1], p[0]);
+        s.less(0.5)
+            .select(high, (1.0 - s).beta_quantile(p[0], p[1]))
     }
     fn draw(&self, stream: &mut Stream, p: &[f64]) -> f64 {
         random::beta(stream, p[0], p[1])

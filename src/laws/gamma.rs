@@ -112,9 +112,18 @@ impl Written for ByScale {
 }
 
 /// shape = (mean / sd)^2, rate = mean / sd^2
-fn from_moments<'p>(p: &[Term<'p>]) -> [Term<'p>; 2] {
+fn moments<'p>(p: &[Term<'p>]) -> [Term<'p>; 2] {
     let ratio = p[0] / p[1];
     [ratio.square(), ratio / p[1]]
+}
+
+/// Beyond these, shape and rate are refused.
+const SMALLEST: f64 = 1e-300;
+const LARGEST: f64 = 1e300;
+
+/// Shape and rate, held to what the formulas can take.
+fn from_moments<'p>(p: &[Term<'p>]) -> [Term<'p>; 2] {
+    moments(p).map(|term| term.at_least(SMALLEST).at_most(LARGEST))
 }
 
 pub(super) struct ByMoments;
@@ -129,11 +138,10 @@ impl Written for ByMoments {
     const SUPPORT: Support = Support::POSITIVE;
 
     fn condition<'p>(&self, p: &[Term<'p>]) -> Option<Term<'p>> {
-        let [shape, rate] = from_moments(p);
-        let regular = |t: Term<'p>| {
-            t.constant(f64::MIN_POSITIVE)
-                .less_equal(t)
-                .and(t.less(f64::INFINITY))
+        let [shape, rate] = moments(p);
+        let regular = |term: Term<'p>| {
+            let above = term.constant(SMALLEST).less_equal(term);
+            above.and(term.less_equal(LARGEST))
         };
         Some(regular(shape).and(regular(rate)))
     }

@@ -9,6 +9,9 @@
 //! assert!((density - (3.0_f64.ln() - 3.0)).abs() < 1e-15);
 //! ```
 
+#[cfg(test)]
+mod checks;
+
 mod algebra;
 mod between;
 mod inside;

@@ -7,9 +7,14 @@ use super::written::{Parts, Written};
 use crate::maths;
 use crate::random::{self, Stream};
 
+/// ln((x / scale)^shape)
+fn ln_hazard<'p>(x: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
+    p[0] * (x.ln() - p[1].ln())
+}
+
 /// (x / scale)^shape
 fn hazard<'p>(x: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
-    (p[0] * (x.ln() - p[1].ln())).exp()
+    ln_hazard(x, p).exp()
 }
 
 pub(super) struct Weibull;
@@ -36,6 +41,11 @@ impl Written for Weibull {
     }
     fn survival<'p>(&self, x: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
         (-hazard(x, p)).exp()
+    }
+    fn ln_distribution<'p>(&self, x: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
+        let ln = ln_hazard(x, p);
+        // Down here -expm1(-h) is h to the last bit, and h would underflow.
+        ln.less(-40.0).select(ln, (-(-ln.exp()).expm1()).ln())
     }
     fn ln_survival<'p>(&self, x: Term<'p>, p: &[Term<'p>]) -> Term<'p> {
         -hazard(x, p)
