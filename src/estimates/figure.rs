@@ -7,7 +7,8 @@ use crate::maths::absolute;
 /// The error is rounded up, never down: to one digit, or to two where the first is a 1 or a 2 (rounding
 /// 0.0012 up to 0.002 would overstate it by two thirds). From 10^7 on and below 10^-4 a power of ten stands
 /// behind: `4.213(7)e-8`. A value without an error has
-/// three digits and a question mark, `0.421(?)`; no value is a dash.
+/// three digits and a question mark, `0.421(?)`, a whole number all of its digits (a median among equal
+/// whole numbers has no error, and is right); no value is a dash.
 pub fn figure(value: Option<f64>, error: Option<f64>) -> String {
     let Some(value) = value.filter(|v| !v.is_nan()) else {
         return "\u{2013}".into();
@@ -20,6 +21,7 @@ pub fn figure(value: Option<f64>, error: Option<f64>) -> String {
         };
     }
     match error.filter(|e| e.is_finite() && *e >= 0.0) {
+        None if value.fract() == 0.0 && absolute(value) < 1e9 => format!("{value:.0}(?)"),
         None => format!("{}(?)", three_digits(value)),
         Some(0.0) => format!("{}(0)", plain(value)),
         Some(error) => with_error(value, error),
@@ -295,7 +297,7 @@ mod tests {
         assert_eq!(figure(Some(0.42134), Some(f64::NAN)), "0.421(?)");
         assert_eq!(figure(Some(1.5), Some(0.0)), "1.5(0)");
         assert_eq!(figure(Some(f64::NEG_INFINITY), None), "-inf");
-        assert_eq!(figure(Some(123_456.0), None), "123000(?)");
+        assert_eq!(figure(Some(123_456.0), None), "123456(?)");
         assert_eq!(figure(Some(1.234e-9), None), "1.23e-9(?)");
     }
 

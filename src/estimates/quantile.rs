@@ -83,4 +83,24 @@ mod tests {
         assert_eq!(quantile(&[-1.7e308, 1.7e308], 0.5), Some(0.0));
         assert_eq!(quantile(&[3.0], 0.975), Some(3.0));
     }
+
+    /// The order statistics around a quantile lie about one standard error of the count away on each side, at
+    /// every effective size.
+    #[test]
+    fn errors_of_uniform_quantiles() {
+        let n = 300_000;
+        let sorted: Vec<f64> = (0..n)
+            .map(|i| (f64::from(i) + 0.5) / f64::from(n))
+            .collect();
+        for level in [0.025, 0.05, 0.3, 0.5, 0.975] {
+            let mut effective = 100.0;
+            while effective < 400_000.0 {
+                let error = quantile_error(&sorted, level, effective).expect("finite");
+                let want = (level * (1.0 - level) / effective).sqrt();
+                let ratio = error / want;
+                assert!((0.8..1.2).contains(&ratio), "{level} {effective}: {ratio}");
+                effective *= 1.0173;
+            }
+        }
+    }
 }

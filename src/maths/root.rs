@@ -24,7 +24,12 @@ pub(super) fn root(low: f64, high: f64, start: f64, f: impl Fn(f64) -> (f64, f64
         } else {
             high = x.to_bits();
         }
-        let change = value / slope;
+        // Where a tail underflows the slope is infinite, and a step of nothing would look like an arrival.
+        let change = if slope.abs() < f64::INFINITY {
+            value / slope
+        } else {
+            f64::NAN
+        };
         let next = if change.abs() < 1e-3 {
             x - x * (change - 0.5 * change * change)
         } else if change.abs() < 700.0 {
