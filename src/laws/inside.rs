@@ -10,11 +10,8 @@ pub(super) fn positive(x: f64) -> f64 {
 
 /// Into the finite numbers.
 pub(super) fn finite(x: f64) -> f64 {
-    if x > f64::MAX {
-        f64::MAX
-    } else if x < -f64::MAX {
-        -f64::MAX
-    } else {
-        x
+    if x.is_infinite() {
+        return if x > 0.0 { f64::MAX } else { f64::MIN };
     }
+    x
 }

@@ -290,7 +290,7 @@ pub(super) fn draw(
         lowest
     };
     let mass = law.at(p).ln_between(below, highest)?;
-    if !(mass > f64::NEG_INFINITY) {
+    if mass.is_nan() || mass == f64::NEG_INFINITY {
         return Some(f64::NAN);
     }
     if mass >= maths::ln(SHARE) {

@@ -10,7 +10,7 @@ const LARGE: f64 = 10.0;
 /// The number of successes in `trials` (a whole number) trials; NaN unless `trials` is finite, 0 or more,
 /// and `probability` lies in [0, 1].
 pub fn binomial(stream: &mut Stream, trials: f64, probability: f64) -> f64 {
-    let in_order = trials >= 0.0 && trials < f64::INFINITY && (0.0..=1.0).contains(&probability);
+    let in_order = (0.0..f64::INFINITY).contains(&trials) && (0.0..=1.0).contains(&probability);
     if !in_order {
         f64::NAN
     } else if probability > 0.5 {

@@ -18,7 +18,7 @@ pub fn ln_gamma(stream: &mut Stream, shape: f64) -> f64 {
     if shape >= 1.0 {
         return maths::ln(at_least_one(stream, shape));
     }
-    if !(shape > 0.0) {
+    if shape.is_nan() || shape <= 0.0 {
         return f64::NAN;
     }
     // G(shape) = G(shape + 1) U^(1 / shape), where -ln U is exponential.
@@ -27,7 +27,7 @@ pub fn ln_gamma(stream: &mut Stream, shape: f64) -> f64 {
 }
 
 fn at_least_one(stream: &mut Stream, shape: f64) -> f64 {
-    if !(shape < f64::INFINITY) {
+    if shape.is_nan() || shape == f64::INFINITY {
         return f64::NAN;
     }
     let d = shape - 1.0 / 3.0;

@@ -49,7 +49,7 @@ mod tests {
         let fair = numbers(1_000_000, 1, |s| third(index(s, LARGE)));
         assert!(chi_square(&fair, even) > RARE);
         let biased = numbers(1_000_000, 1, |s| {
-            third((u128::from(s.word()) * u128::from(LARGE) >> 64) as u64)
+            third(((u128::from(s.word()) * u128::from(LARGE)) >> 64) as u64)
         });
         assert!(chi_square(&biased, even) < RARE);
     }

@@ -5,7 +5,7 @@ use super::{Stream, gamma, poisson};
 /// Failures before `shape` successes where a failure is `odds` times as likely as a success; the mean is
 /// `shape * odds`. NaN unless `shape` is positive, `odds` 0 or positive, both finite.
 pub fn negative_binomial(stream: &mut Stream, shape: f64, odds: f64) -> f64 {
-    if !(odds >= 0.0 && odds < f64::INFINITY) {
+    if !(0.0..f64::INFINITY).contains(&odds) {
         return f64::NAN;
     }
     let mean = gamma(stream, shape) * odds;

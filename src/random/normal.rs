@@ -8,8 +8,8 @@ use std::sync::LazyLock;
 
 /// Where the tail starts and the area of a layer: computed to 40 digits from the condition that the layers
 /// close at the top; the 15 digits that Marsaglia & Tsang print agree.
-const TAIL: f64 = 3.654_152_885_361_008_8;
-const AREA: f64 = 0.004_928_673_233_974_655_3;
+const TAIL: f64 = 3.654_152_885_361_009;
+const AREA: f64 = 0.004_928_673_233_974_655;
 
 pub(super) static NORMAL: LazyLock<Table> =
     LazyLock::new(|| Table::new(TAIL, AREA, density, |f| maths::sqrt(-2.0 * maths::ln(f))));

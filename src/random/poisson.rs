@@ -9,7 +9,7 @@ const LARGE: f64 = 10.0;
 
 /// A whole number; NaN unless `mean` is 0 or positive and finite.
 pub fn poisson(stream: &mut Stream, mean: f64) -> f64 {
-    if !(mean >= 0.0 && mean < f64::INFINITY) {
+    if !(0.0..f64::INFINITY).contains(&mean) {
         f64::NAN
     } else if mean < LARGE {
         inversion(stream, mean)

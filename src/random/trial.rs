@@ -1,5 +1,10 @@
 //! Tests of samplers: golden digests, Kolmogorov-Smirnov, chi-square.
 
+#![expect(
+    clippy::neg_cmp_op_on_partial_ord,
+    reason = "a comparison with NaN must not pass a check"
+)]
+
 use super::{Purpose, Stream};
 use crate::maths;
 use sha2::{Digest, Sha256};
