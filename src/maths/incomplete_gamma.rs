@@ -1,6 +1,6 @@
 //! The regularised incomplete gamma functions, their logarithms, and the quantile.
 //!
-//! Errors: of the logarithms, a few 1e-15 times the greater of 1 and the result; of the functions the same, as
+//! Errors: of the logarithms, up to 1e-14 times the greater of 1 and the result; the same of the functions, as
 //! an error relative to the result.
 
 use super::exponential::exp;

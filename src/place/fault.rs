@@ -5,7 +5,7 @@ use crate::place::Place;
 /// One thing that is wrong.
 #[derive(Debug, Clone, PartialEq, Eq)]
 pub struct Fault {
-    /// What is wrong, in one sentence without a full stop: "`scael` is not a key of [sampler]".
+    /// What is wrong, in one sentence without a full stop: "`scael` is not a key of \[sampler\]".
     pub what: String,
     /// Where; `None` only for faults of whole files that could not be read.
     pub place: Option<Place>,

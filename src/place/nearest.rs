@@ -11,7 +11,9 @@ pub fn nearest<'a>(name: &str, candidates: impl IntoIterator<Item = &'a str>) ->
             continue;
         }
         let distance = strsim::damerau_levenshtein(&name.to_lowercase(), &candidate.to_lowercase());
-        let allowed = 1 + name.chars().count().max(candidate.chars().count()) / 4;
+        let longer = name.chars().count().max(candidate.chars().count());
+        // Of two names of one letter each, neither is like the other.
+        let allowed = (1 + longer / 4).min(longer.saturating_sub(1));
         if distance <= allowed && best.is_none_or(|(d, _)| distance < d) {
             best = Some((distance, candidate));
         }

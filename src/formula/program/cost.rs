@@ -21,21 +21,15 @@ pub(super) fn of(node: &Node) -> f64 {
 pub(super) fn is_slow_unary(op: Unary) -> bool {
     matches!(
         op,
-        Unary::Sin
-            | Unary::Cos
-            | Unary::Tan
+        Unary::Tan
             | Unary::Asin
             | Unary::Acos
             | Unary::Atan
             | Unary::Sinh
             | Unary::Cosh
-            | Unary::LnGamma
             | Unary::Digamma
             | Unary::Erf
             | Unary::Erfc
-            | Unary::NormalCdf
-            | Unary::LnNormalCdf
-            | Unary::NormalQuantile
     )
 }
 
