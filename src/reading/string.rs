@@ -13,6 +13,10 @@ pub(super) fn offsets(raw: &str, decoded: &str) -> Option<Vec<usize>> {
         _ => return None,
     };
     let end = raw.len() - fence;
+    // One that the file leaves open has no end of its own.
+    if !raw.as_bytes()[end..].iter().all(|&byte| byte == quote) {
+        return None;
+    }
     let mut at = fence;
     let mut text = String::with_capacity(decoded.len());
     let mut offsets = Vec::with_capacity(decoded.len() + 1);

@@ -175,6 +175,21 @@ fn places_inside_texts() {
 }
 
 #[test]
+fn texts_left_open_are_faults() {
+    for text in [
+        "a = \"\"\"\nx\u{1f600}",
+        "a = '''\n\u{1f600}",
+        "a = \"\u{1f600}",
+        "a = \"\"\"",
+        "a = '\u{e4}",
+    ] {
+        let (root, mut faults) = read(text);
+        assert!(!faults.is_empty(), "{text}");
+        root.text("a", &mut faults);
+    }
+}
+
+#[test]
 fn deep_nesting_is_a_fault() {
     for text in [
         format!("a = {}", "[".repeat(100_000)),
