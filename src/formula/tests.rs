@@ -331,7 +331,7 @@ fn faults_say_where_and_what_would_be_right() {
         "t.height",
         "t.height | table `t` has no column `height` | its columns are `station`, `site`, `kind`, `y`, `x1`, `x2`, `x`",
     );
-    fault("s.y", "s.y | no table is called `s` | did you mean `t`?");
+    fault("s.y", "s.y | no table is called `s` | tables here: `t`");
     fault(
         "rate[5]",
         "5 | `rate` has no element 5 | its elements have the numbers 1 to 4",

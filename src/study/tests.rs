@@ -164,10 +164,10 @@ fn every_section_is_read() {
          goal = { digits = 2 }\n\
          [ensemble]\nchains = 4\nburn_in = 0\ndraws = 1e3\nevery = 5\nstart = \"prior\"\n\
          [goal]\nerror = 0.1\n\
-         [grounds]\naccept = [\"b\", \"a\"]\nbecause = \"so\"\n",
+         [grounds]\naccept = [\"irreducible\", \"finite mass\"]\nbecause = \"so\"\n",
     );
     let point = &plan.points[0];
-    assert_eq!(plan.accepted.conditions, ["a", "b"]);
+    assert_eq!(plan.accepted.conditions, ["finite mass", "irreducible"]);
     assert_eq!(point.data[0].rows, 14);
     assert_eq!(point.data[0].units, [("hours".into(), "h".into())]);
     assert_eq!(point.ensemble.burn_in, BurnIn::Fixed(0));
