@@ -27,7 +27,7 @@ pub fn read(
     let Some(section) = section else {
         return Some(target.chosen(Vec::new(), (0..coordinates.len()).collect()));
     };
-    let before = faults.0.len();
+    let before = faults.count();
     let steps = section.sections("step", faults);
     let sampler = if section.has("step") {
         target.stepped(section, &steps, faults)
@@ -35,7 +35,7 @@ pub fn read(
         target.single(section, faults)
     };
     section.finish(faults);
-    sampler.filter(|_| faults.0.len() == before)
+    sampler.filter(|_| faults.count() == before)
 }
 
 /// What there is to move.
@@ -396,7 +396,7 @@ fn method(section: &Section, faults: &mut Faults) -> Option<&'static Method> {
 
 /// Reads the method's options; one of another method is a fault with that method's name.
 fn options(section: &Section, method: &Method, faults: &mut Faults) -> Option<Options> {
-    let before = faults.0.len();
+    let before = faults.count();
     let own = |name: &str| method.options.iter().any(|option| option.name == name);
     for other in declaration::table() {
         for option in other.options.iter().filter(|option| !own(option.name)) {
@@ -432,7 +432,7 @@ fn options(section: &Section, method: &Method, faults: &mut Faults) -> Option<Op
     if own("limit") {
         read.limit = section.count("limit", 1..=1_000_000, faults);
     }
-    (faults.0.len() == before).then_some(read)
+    (faults.count() == before).then_some(read)
 }
 
 fn is_able(method: &Method, kind: CoordinateKind) -> bool {

@@ -57,15 +57,21 @@ const MOST: usize = 1000;
 /// The faults found so far; reading goes on after each, so that all are shown in one go. The same fault is
 /// kept once.
 #[derive(Debug, Default)]
-pub struct Faults(pub Vec<Fault>);
+pub struct Faults(pub Vec<Fault>, usize);
 
 impl Faults {
     pub fn push(&mut self, fault: Fault) {
+        self.1 += 1;
         if self.0.len() < MOST && !self.0.contains(&fault) {
             self.0.push(fault);
         }
     }
     pub fn is_empty(&self) -> bool {
         self.0.is_empty()
+    }
+    /// How often a fault was recorded, those that stood already included: what has faults of its own is
+    /// told by a change of this, not of the list.
+    pub fn count(&self) -> usize {
+        self.1
     }
 }

@@ -36,7 +36,7 @@ pub(super) fn read(
     if !root.has("ensemble") {
         return (ensemble, Some(StartSpec::Spread));
     }
-    let before = faults.0.len();
+    let before = faults.count();
     let Some(section) = root.section("ensemble", faults) else {
         return (ensemble, None);
     };
@@ -66,7 +66,7 @@ pub(super) fn read(
         faults.push(Fault::at(path.place.clone(), what).label("a row is needed for each chain"));
     }
     section.finish(faults);
-    (ensemble, start.filter(|_| faults.0.len() == before))
+    (ensemble, start.filter(|_| faults.count() == before))
 }
 
 /// A number of draws, or `{ from, at_most }`.

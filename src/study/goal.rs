@@ -73,7 +73,7 @@ pub(super) fn of_estimand(value: &Value, faults: &mut Faults) -> Option<Estimand
         );
         return None;
     }
-    let before = faults.0.len();
+    let before = faults.count();
     let section = value.section(faults)?;
     let goals = [
         section
@@ -91,7 +91,7 @@ pub(super) fn of_estimand(value: &Value, faults: &mut Faults) -> Option<Estimand
     match (given.next(), given.next()) {
         (Some(goal), None) => Some(goal),
         (one, _) => {
-            if faults.0.len() == before {
+            if faults.count() == before {
                 let what = match one {
                     Some(_) => format!("`{}` has more than one goal", value.path),
                     None => format!("`{}` has no goal", value.path),

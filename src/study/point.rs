@@ -61,7 +61,7 @@ impl<'a> Surroundings<'a> {
         if let Some(read) = known {
             return Some(read.found.clone());
         }
-        let before = faults.0.len();
+        let before = faults.count();
         let table = reading::data(name, section, self.folder, faults);
         if let (Some(table), Some(path)) = (&table, section.text("file", faults)) {
             self.enter(&path, &table.sha256);
@@ -69,7 +69,7 @@ impl<'a> Surroundings<'a> {
         let table = Arc::new(table?);
         let found = (described(&table, section), table);
         // One with faults is read anew, so that every point has them.
-        if faults.0.len() == before {
+        if faults.count() == before {
             self.read.push(Read {
                 name: name.to_string(),
                 section: tree.clone(),

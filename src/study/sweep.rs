@@ -63,7 +63,7 @@ impl Sweep {
         if !root.has("sweep") {
             return Some(sweep);
         }
-        let before = faults.0.len();
+        let before = faults.count();
         let section = root.section("sweep", faults)?;
         if section.word("combine", &["grid", "pair"], faults) == Some("pair") {
             sweep.combine = Combine::Pair;
@@ -86,7 +86,7 @@ impl Sweep {
             sweep.axes.extend(axis);
         }
         sweep.check(section.place(), faults);
-        (faults.0.len() == before).then_some(sweep)
+        (faults.count() == before).then_some(sweep)
     }
 
     /// No path within another, no two points alike, not too many points.

@@ -57,10 +57,10 @@ impl Family for DensityFamily {
         "unknowns with laws, what was observed, and the density of the one given the other"
     }
     fn resolve(&self, request: &Request, faults: &mut Faults) -> Option<Arc<dyn Model>> {
-        let before = faults.0.len();
+        let before = faults.count();
         let declared = Declared::read(request.model, request.predict, faults);
-        let posterior = Posterior::build(&declared, request.tables, request.model.place(), faults);
-        let posterior = posterior?;
+        let place = request.model.place();
+        let posterior = Posterior::build(&declared, request.tables, place, before, faults)?;
         let recorded = recorded::resolve(
             &declared,
             request.estimands,
@@ -76,7 +76,7 @@ impl Family for DensityFamily {
         let sampler = crate::methods::read(request.sampler, &posterior.coordinates, &names, faults);
         let start = start_reading::read(request.start, &posterior, faults);
         let (recorded, sampler, start) = (recorded?, sampler?, start?);
-        if faults.0.len() > before {
+        if faults.count() > before {
             return None;
         }
         let canonical = canonical::of(&declared, &posterior, &sampler, &start);

@@ -19,7 +19,7 @@ pub fn observe(
     graph: &mut Graph,
     faults: &mut Faults,
 ) -> Option<Value> {
-    let before = faults.0.len();
+    let before = faults.count();
     let of = lower(&entry.of, names, graph, faults);
     let law = lower_law(&entry.law, names, graph, faults);
     let shape = of.as_ref().map(|of| of.shape.clone());
@@ -34,7 +34,7 @@ pub fn observe(
     let entered = part(&entry.entered, Kind::Number, "entered");
     let weight = part(&entry.weight, Kind::Number, "weight");
     let (of, law) = (of?, law?);
-    if faults.0.len() > before {
+    if faults.count() > before {
         return None;
     }
     if !fits(&law.shape, &of.shape) {

@@ -38,14 +38,15 @@ enum Entry<'a> {
 }
 
 impl Posterior {
-    /// Builds it; `None` only with a fault recorded. Goes on after a fault as far as that can show others.
+    /// Builds it; `None` only with a fault recorded since the count of faults was `before`, which it was when
+    /// the reading of the sections began. Goes on after a fault as far as that can show others.
     pub fn build(
         declared: &Declared,
         tables: &BTreeMap<String, Arc<Table>>,
         model: &Place,
+        before: usize,
         faults: &mut Faults,
     ) -> Option<Posterior> {
-        let before = faults.0.len();
         unique_names(declared, tables, faults);
         if declared.none_named {
             let fault = Fault::at(model.clone(), "the model has no unknown")
@@ -80,7 +81,7 @@ impl Posterior {
             build.entry(name, &entries[name], faults);
         }
         build.likelihood(declared, faults);
-        if faults.0.len() > before {
+        if faults.count() > before {
             return None;
         }
         Some(build.finish(order))

@@ -39,7 +39,7 @@ pub fn resolve(
     tables: &BTreeMap<String, Arc<Table>>,
     faults: &mut Faults,
 ) -> Option<Recorded> {
-    let before = faults.0.len();
+    let before = faults.count();
     let mut graph = posterior.graph.clone();
     let mut names = posterior.names.clone();
     let mut predictions = Vec::new();
@@ -92,7 +92,7 @@ pub fn resolve(
         values.push(term.value);
         quantities.extend(elements(&spec.name.text, &term.shape, unit, term.kind, i));
     }
-    let program = (faults.0.len() == before).then(|| Program::compile(&graph, &values))?;
+    let program = (faults.count() == before).then(|| Program::compile(&graph, &values))?;
     Some(Recorded {
         predictions,
         program,

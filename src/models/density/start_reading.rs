@@ -10,7 +10,7 @@ use std::collections::BTreeMap;
 
 /// The start, resolved: what a stated start does not give must have a law of finite mass.
 pub fn read(spec: &StartSpec, posterior: &Posterior, faults: &mut Faults) -> Option<Start> {
-    let before = faults.0.len();
+    let before = faults.count();
     let start = match spec {
         StartSpec::Spread => Start::Spread,
         StartSpec::Prior => Start::Prior,
@@ -58,7 +58,7 @@ pub fn read(spec: &StartSpec, posterior: &Posterior, faults: &mut Faults) -> Opt
         }
         faults.push(fault);
     }
-    (faults.0.len() == before).then_some(start)
+    (faults.count() == before).then_some(start)
 }
 
 fn at(section: &Section, posterior: &Posterior, faults: &mut Faults) -> BTreeMap<String, Vec<f64>> {
