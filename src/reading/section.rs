@@ -97,6 +97,18 @@ impl Section {
     pub fn need(&self, key: &str, meaning: &str, faults: &mut Faults) -> Option<Value> {
         let found = self.value(key);
         if found.is_none() && !self.damaged() {
+            let unasked = |entry: &&Entry| !self.asked.borrow().contains(&entry.key.text);
+            let slips = self.tree.entries.iter().filter(unasked);
+            let slip = slips
+                .clone()
+                .find(|entry| nearest(&entry.key.text, [key]).is_some());
+            if let Some(slip) = slip {
+                self.asked.borrow_mut().insert(slip.key.text.clone());
+                let what = format!("`{}` is not a key of {}", slip.key.text, self.called());
+                let fault = Fault::at(slip.key.place.clone(), what).label("unknown key");
+                faults.push(fault.help(format!("did you mean `{key}`?")));
+                return None;
+            }
             let fault = Fault::at(
                 self.place.clone(),
                 format!("{} needs `{key}`", self.called()),

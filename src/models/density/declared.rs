@@ -3,6 +3,7 @@
 use crate::formula::{Expr, parse};
 use crate::place::{Fault, Faults, Text};
 use crate::reading::{Content, Section, Value};
+use std::collections::BTreeSet;
 
 /// How many values an unknown or a prediction has.
 #[derive(Debug, Clone)]
@@ -51,6 +52,8 @@ pub struct Declared {
     pub unknowns: Vec<LawEntry>,
     /// [model.unknown] has no entry at all, not even one at fault.
     pub none_named: bool,
+    /// Names whose own entry could not be read: what uses them is not looked at.
+    pub broken: BTreeSet<String>,
     pub definitions: Vec<FormulaEntry>,
     pub observed: Vec<ObservedEntry>,
     pub terms: Vec<FormulaEntry>,
@@ -64,20 +67,21 @@ impl Declared {
     /// Reads both sections; everything that could be read is there, with a fault for everything else.
     pub fn read(model: &Section, predict: Option<&Section>, faults: &mut Faults) -> Declared {
         let mut declared = Declared::default();
+        let broken = &mut declared.broken;
         for (name, value) in entries(model, "constant", faults) {
-            if let (true, Some(number)) = (named_well(&name, faults), value.number(faults)) {
-                declared.constants.push((name, number));
-            }
+            let number = value.number(faults).filter(|_| named_well(&name, faults));
+            let entry = number.map(|number| (name.clone(), number));
+            declared.constants.extend(kept(name, entry, broken));
         }
         let unknowns = entries(model, "unknown", faults);
         declared.none_named = unknowns.is_empty();
         for (name, value) in unknowns {
-            declared.unknowns.extend(law_entry(name, &value, faults));
+            let entry = law_entry(&name, &value, faults);
+            declared.unknowns.extend(kept(name, entry, broken));
         }
         for (name, value) in entries(model, "define", faults) {
-            declared
-                .definitions
-                .extend(formula_entry(name, &value, faults));
+            let entry = formula_entry(&name, &value, faults);
+            declared.definitions.extend(kept(name, entry, broken));
         }
         for (name, value) in entries(model, "observed", faults) {
             declared
@@ -85,14 +89,24 @@ impl Declared {
                 .extend(observed_entry(name, &value, faults));
         }
         for (name, value) in entries(model, "term", faults) {
-            declared.terms.extend(formula_entry(name, &value, faults));
+            declared.terms.extend(formula_entry(&name, &value, faults));
         }
         model.finish(faults);
         for (name, value) in predict.map(Section::entries).unwrap_or_default() {
-            declared.predictions.extend(law_entry(name, &value, faults));
+            declared
+                .predictions
+                .extend(law_entry(&name, &value, faults));
         }
         declared
     }
+}
+
+/// What could be read of an entry; of one that could not, the name is kept among the broken ones.
+fn kept<E>(name: Text, entry: Option<E>, broken: &mut BTreeSet<String>) -> Option<E> {
+    if entry.is_none() {
+        broken.insert(name.text);
+    }
+    entry
 }
 
 fn entries(model: &Section, key: &str, faults: &mut Faults) -> Vec<(Text, Value)> {
@@ -144,12 +158,12 @@ fn needed_formula(
 }
 
 /// `"law"` alone, or `{ law = "…", per = …, unit = "…" }`.
-fn law_entry(name: Text, value: &Value, faults: &mut Faults) -> Option<LawEntry> {
-    let good_name = named_well(&name, faults);
+fn law_entry(name: &Text, value: &Value, faults: &mut Faults) -> Option<LawEntry> {
+    let good_name = named_well(name, faults);
     if let Content::Text(text) = &value.content {
         let law = parse(text, faults)?;
-        return good_name.then_some(LawEntry {
-            name,
+        return good_name.then(|| LawEntry {
+            name: name.clone(),
             law,
             per: None,
             unit: None,
@@ -170,9 +184,10 @@ fn law_entry(name: Text, value: &Value, faults: &mut Faults) -> Option<LawEntry>
         Some(Some(per)) => Some(per),
         None => None,
     };
-    good_name.then_some(LawEntry {
-        name,
-        law: law?,
+    let law = law?;
+    good_name.then(|| LawEntry {
+        name: name.clone(),
+        law,
         per,
         unit,
     })
@@ -206,10 +221,13 @@ fn per(value: &Value, faults: &mut Faults) -> Option<Per> {
     }
 }
 
-fn formula_entry(name: Text, value: &Value, faults: &mut Faults) -> Option<FormulaEntry> {
-    let good_name = named_well(&name, faults);
+fn formula_entry(name: &Text, value: &Value, faults: &mut Faults) -> Option<FormulaEntry> {
+    let good_name = named_well(name, faults);
     let formula = parse(&value.text(faults)?, faults)?;
-    good_name.then_some(FormulaEntry { name, formula })
+    good_name.then(|| FormulaEntry {
+        name: name.clone(),
+        formula,
+    })
 }
 
 fn observed_entry(name: Text, value: &Value, faults: &mut Faults) -> Option<ObservedEntry> {

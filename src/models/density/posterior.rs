@@ -74,7 +74,7 @@ impl Posterior {
             unknowns: Vec::new(),
             coordinates: Vec::new(),
             parts: Vec::new(),
-            undefined: BTreeSet::new(),
+            undefined: declared.broken.clone(),
         };
         build.constants(declared);
         for name in &order {
