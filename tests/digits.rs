@@ -198,7 +198,8 @@ fn threads_can_not_be_seen() {
             let file = root().join("tests/digits").join(format!("{study}.toml"));
             let into = folder.path().join(threads);
             let run = run(&file, &into, &["--threads", threads]);
-            assert_eq!(run.status, 0, "{}", run.stderr);
+            // So short a run may leave chains that disagree: it says so, and is compared all the same.
+            assert!(matches!(run.status, 0 | 3), "{}", run.stderr);
             summaries.push((study, run.file("summary.json")));
         }
     }

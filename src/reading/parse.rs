@@ -4,6 +4,7 @@ use crate::place::{Fault, Faults, Place, Source, Text};
 use crate::reading::section::Section;
 use crate::reading::string::offsets;
 use crate::reading::value::{Content, Entry, Tree, Value};
+use std::collections::BTreeMap;
 use std::ops::Range;
 use std::sync::Arc;
 use toml::Spanned;
@@ -13,12 +14,21 @@ use toml::de::{DeArray, DeInteger, DeTable, DeValue};
 pub fn parse(source: &Arc<Source>, faults: &mut Faults) -> Section {
     let (table, errors) = DeTable::parse_recoverable(&source.text);
     let damaged = !errors.is_empty();
+    // Of the faults on one line all but the first follow from it, as a rule; one with advice tells most.
+    let mut lines: BTreeMap<usize, Fault> = BTreeMap::new();
     for error in errors {
-        faults.push(syntax(
-            source,
-            error.span().unwrap_or(0..0),
-            error.message(),
-        ));
+        let span = error.span().unwrap_or(0..0);
+        let line = source.text[..span.start].matches('\n').count();
+        let fault = syntax(source, span, error.message());
+        match lines.get(&line) {
+            Some(kept) if kept.help.is_some() || fault.help.is_none() => {}
+            _ => {
+                lines.insert(line, fault);
+            }
+        }
+    }
+    for fault in lines.into_values() {
+        faults.push(fault);
     }
     let whole = place(source, 0..0);
     let reader = Reader { source, damaged };
