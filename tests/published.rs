@@ -56,6 +56,7 @@ fn run_under(study: &str, method: &str) -> common::Run {
         } else {
             String::new()
         },
+        stderr: format!("{}{}", run.stderr, run.stdout),
         ..run
     }
 }
@@ -134,8 +135,8 @@ fn funnel_centred_misses_its_goal() {
     let point = &summary["points"][0];
     assert_eq!(point["goal"], "missed");
     assert!(
-        run.stderr.contains("goal"),
-        "the messages do not speak of the goal:\n{}",
+        run.stderr.contains("the goal is MISSED"),
+        "the goal was missed without a word:\n{}",
         run.stderr
     );
 }

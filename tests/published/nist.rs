@@ -157,11 +157,16 @@ fn grid(n: usize, method: &str) {
         let study = format!("lead {lead}, n {n}");
         let offset = moved(&base.mu, centre, mean, s / spread, &source);
         let sigma = moved(&base.sigma, 0.0, 0.0, s / spread, &source);
-        rows.extend(Comparison::all(&study, method, "offset", point, &offset));
+        // Draws of `mu` stand on the doubles around the lead, and so does a quantile of them.
+        let step = (lead as f64).next_up() - lead as f64;
+        let mut offsets = Comparison::all(&study, method, "offset", point, &offset);
+        for row in offsets.iter_mut().filter(|row| row.figure.starts_with('0')) {
+            row.rounding = step;
+        }
+        rows.extend(offsets);
         rows.extend(Comparison::all(&study, method, "sigma", point, &sigma));
         let exact = tabulated(lead, n);
-        // A step of doubles at the lead: what `mu` itself, and a mean of many such, can hold.
-        let step = (lead as f64).next_up() - lead as f64;
+        // `mu` itself, and a mean of many such, hold no more than the steps of doubles at the lead.
         if lead <= 10_000_000_000 {
             rows.extend(with_rounding(
                 Comparison::all(&study, method, "mu", point, &exact.mu),

@@ -54,6 +54,9 @@ impl Posterior {
                 .help("declare at least one under [model.unknown], such as a = { law = \"normal(mean = 0, sd = 1)\" }");
             faults.push(fault);
         }
+        if declared.unknowns.is_empty() {
+            return None;
+        }
         let mut entries: BTreeMap<String, Entry> = BTreeMap::new();
         for entry in &declared.unknowns {
             entries.insert(entry.name.text.clone(), Entry::Unknown(entry));
