@@ -86,8 +86,8 @@ pub fn file(
 /// Points whose kernels are entered in the circumstances.
 const KERNELS: usize = 100;
 
-/// Counts and rates of the kernels since this start, a list over the chains for each: acceptance rates and
-/// the like. They begin anew with every start of the program, so they are circumstances.
+/// Counts and rates of the kernels over the draws, a list over the chains for each: acceptance rates and the
+/// like. How they are told is no part of a result, so they are circumstances.
 fn kernels(plan: &Plan, ends: &[PointEnd<Reviewed>]) -> Json {
     let point = |end: &PointEnd<Reviewed>| {
         let ended = end.ended.as_ref().ok()?;

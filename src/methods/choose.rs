@@ -25,6 +25,10 @@ const SHORT_RANGE: u64 = 64;
 /// factor cost more than most densities.
 const LEARNED: usize = 64;
 
+/// The most coordinates whose covariance is learned at all: state and factor grow as their square, and each is
+/// kept with every block.
+pub const MOST_LEARNED: usize = 1000;
+
 /// Moves for some coordinates, how often each is made, and a sentence.
 pub struct Choice {
     pub moves: Vec<(Move, u64)>,

@@ -320,6 +320,23 @@ impl Unknowns<'_> {
             },
             _ => choose::random_walk(real.len(), options.scale, options.adapt),
         };
+        if let Settings::RandomWalk {
+            adapt: Adapt::Covariance,
+            ..
+        } = for_real
+            && real.len() > choose::MOST_LEARNED
+        {
+            let count = real.len();
+            faults.push(
+                Fault::at(
+                    place.clone(),
+                    format!("the covariance of {count} coordinates is too large to be learned"),
+                )
+                .label(format!("at most {}", choose::MOST_LEARNED))
+                .help("write adapt = \"scale\", move fewer unknowns in each step, or use `slice`"),
+            );
+            return None;
+        }
         let for_integer = match method.name {
             "conditional" => Settings::Conditional,
             _ => choose::integer_walk(options.scale, options.adapt),

@@ -3,7 +3,7 @@
 //! | name | covers |
 //! |---|---|
 //! | stream key | model, data, sampler, start, burn-in, `every`, block rule, swept values (with shared streams: the study without them), root, chain index |
-//! | chain key | stream key, swept values, `NUMERICS.draws`; with a self-chosen burn-in also the number of chains and the estimands |
+//! | chain key | stream key, swept values, `NUMERICS.draws`; with shared streams also the point's own model, data, sampler, start, burn-in, `every`; with a self-chosen burn-in also the number of chains and the estimands |
 //! | plan digest | all chain keys, draws, goal, estimands, predictions, block lengths, `keep`, accepted grounds, title, question, `NUMERICS.estimates` |
 //!
 //! A self-chosen burn-in ends when R-hat of the recorded quantities over all chains is small, so the draws
@@ -30,15 +30,14 @@ impl Plan {
 
     /// Names a point by its content: what all its chain keys share.
     pub fn point_key(&self, point: usize) -> [u8; 32] {
-        let content = self.content(point);
-        let values = values(&self.points[point]);
-        let covered = Json::object([
-            ("content", content),
-            ("values", values),
+        let mut covered = vec![
+            ("content", self.content(point)),
+            ("values", values(&self.points[point])),
             ("root", Json::text(&*self.root)),
             ("numerics_draws", Json::Count(NUMERICS.draws)),
-        ]);
-        tagged("odograph point key", &covered)
+        ];
+        covered.extend(self.own(point));
+        tagged("odograph point key", &Json::object(covered))
     }
 
     /// Names the folder.
@@ -93,6 +92,7 @@ impl Plan {
     /// [`Plan::chain_key`] of several chains of a point.
     pub fn chain_keys(&self, point: usize, chains: std::ops::Range<u64>) -> Vec<[u8; 32]> {
         let streams = self.stream_keys(point, chains);
+        let own = self.own(point);
         let point = &self.points[point];
         let together = match point.ensemble.burn_in {
             BurnIn::Fixed(_) => Json::Null,
@@ -102,31 +102,43 @@ impl Plan {
             ]),
         };
         let key = |stream: &[u8; 32]| {
-            let covered = Json::object([
+            let mut covered = vec![
                 ("stream", Json::text(hex(stream))),
                 ("values", values(point)),
                 ("together", together.clone()),
                 ("numerics_draws", Json::Count(NUMERICS.draws)),
-            ]);
-            tagged("odograph chain key", &covered)
+            ];
+            covered.extend(own.clone());
+            tagged("odograph chain key", &Json::object(covered))
         };
         streams.iter().map(key).collect()
     }
 
     /// What a point's chains follow, before any value is swept into the key.
     fn content(&self, point: usize) -> Json {
-        if let Some(shared) = &self.shared {
-            return shared.clone();
+        match &self.shared {
+            Some(shared) => shared.clone(),
+            None => self.points[point].content(),
         }
-        let point = &self.points[point];
-        Json::object([
-            ("model", point.model.canonical()),
-            ("resolved", point.shared_parts(true, true, true)),
-        ])
+    }
+
+    /// With shared streams, the digest of what a point has of its own: the stream key leaves out what is swept,
+    /// and of a swept path to a file the value says nothing of its bytes.
+    fn own(&self, point: usize) -> Option<(&'static str, Json)> {
+        self.shared.as_ref()?;
+        let content = tagged("odograph point content", &self.points[point].content());
+        Some(("own", Json::text(hex(&content))))
     }
 }
 
 impl Point {
+    fn content(&self) -> Json {
+        Json::object([
+            ("model", self.model.canonical()),
+            ("resolved", self.shared_parts(true, true, true)),
+        ])
+    }
+
     /// What a stream key covers beside the model; with shared streams, without what is swept.
     pub(crate) fn shared_parts(&self, data: bool, burn_in: bool, every: bool) -> Json {
         let given = |given: bool, json: Json| if given { json } else { Json::Null };
@@ -139,9 +151,12 @@ impl Point {
     }
 }
 
+/// In order of path: that of the axes in the file must not move a draw.
 fn values(point: &Point) -> Json {
+    let mut values: Vec<&(String, Json)> = point.values.iter().collect();
+    values.sort_by(|a, b| a.0.cmp(&b.0));
     let pair = |(path, value): &(String, Json)| Json::array([Json::text(&**path), value.clone()]);
-    Json::array(point.values.iter().map(pair))
+    Json::array(values.into_iter().map(pair))
 }
 
 /// SHA-256 over a tag and the canonical text, each with its length before it.

@@ -190,11 +190,23 @@ impl Point {
     /// What is recorded of the chains: as much of the estimands as can move a number in a block.
     pub(super) fn recorded_json(&self) -> Json {
         let of = self.estimands.iter().map(|e| Json::text(&*e.of));
-        Json::object([("of", Json::array(of)), ("predict", self.predict_json())])
+        let predict = self.predict.iter().map(|prediction| {
+            let law = Json::text(&*prediction.law);
+            let members = [("law", law), ("per", prediction.per.clone())];
+            (&*prediction.name, Json::object(members))
+        });
+        Json::object([("of", Json::array(of)), ("predict", Json::object(predict))])
     }
 
     pub(super) fn predict_json(&self) -> Json {
-        pairs(&self.predict)
+        Json::object(self.predict.iter().map(|prediction| {
+            let members = [
+                ("law", Json::text(&*prediction.law)),
+                ("per", prediction.per.clone()),
+                ("unit", optional(prediction.unit.as_deref())),
+            ];
+            (&*prediction.name, Json::object(members))
+        }))
     }
 }
 

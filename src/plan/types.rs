@@ -118,8 +118,8 @@ pub struct Point {
     /// `None`: run the draws asked for and stop.
     pub goal: Option<Goal>,
     pub estimands: Vec<Estimand>,
-    /// `[predict]`: a formula, as printed from its parsed tree, for each name, in order of name.
-    pub predict: Vec<(String, String)>,
+    /// `[predict]`, in order of name.
+    pub predict: Vec<Prediction>,
     /// Draws in a block.
     pub block: u64,
 }
@@ -176,10 +176,22 @@ pub struct Estimand {
     pub name: String,
     /// The formula as printed from its parsed tree.
     pub of: String,
+    /// Its own, or that of the unknown or prediction it is named after.
     pub unit: Option<String>,
     /// In the order given.
     pub give: Vec<Give>,
     pub goal: Option<EstimandGoal>,
+}
+
+/// A quantity drawn from a law given the unknowns.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Prediction {
+    pub name: String,
+    /// The formula as printed from its parsed tree.
+    pub law: String,
+    /// How many values it has, as written; null where that follows from the law.
+    pub per: Json,
+    pub unit: Option<String>,
 }
 
 /// A figure asked of an estimand.

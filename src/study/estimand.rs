@@ -54,6 +54,13 @@ fn one(section: &Section, faults: &mut Faults) -> Option<(EstimandSpec, Estimand
         .value("goal")
         .and_then(|value| goal::of_estimand(&value, faults));
     section.finish(faults);
+    if let (Some(place), false) = (section.key_place("goal"), give.contains(&Give::Value)) {
+        faults.push(
+            Fault::at(place, "a goal is for the value, which `give` leaves out")
+                .label("could never be looked at")
+                .help("add \"value\" to `give`, or leave the goal out"),
+        );
+    }
     let name = name?;
     let estimand = Estimand {
         name: name.text.clone(),

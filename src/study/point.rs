@@ -3,9 +3,10 @@
 use crate::canon::Json;
 use crate::course::{Family, Request, StartSpec};
 use crate::place::{Faults, Text};
-use crate::plan::{Data, Input, Point, block_length};
-use crate::reading::{self, Section, Table, Tree};
+use crate::plan::{Data, Input, Point, Prediction, block_length};
+use crate::reading::{self, Content, Section, Table, Tree, Value};
 use crate::study::estimand::{self, identifier, printed};
+use crate::study::sweep::json;
 use crate::study::{ensemble, goal};
 use std::collections::BTreeMap;
 use std::path::Path;
@@ -132,6 +133,12 @@ pub(super) fn resolve_point(
     if specs.is_empty() {
         estimands = estimand::of_quantities(resolved.quantities());
     }
+    for quantity in resolved.quantities() {
+        let unit = &mut estimands[quantity.estimand].unit;
+        if unit.is_none() {
+            unit.clone_from(&quantity.unit);
+        }
+    }
     let block = block_length(
         resolved.cost(),
         resolved.quantities().len(),
@@ -146,7 +153,7 @@ pub(super) fn resolve_point(
         goal,
         estimands,
         predict: predict
-            .map(|section| formulas(&section))
+            .map(|section| predictions(&section))
             .unwrap_or_default(),
         block,
     })
@@ -187,17 +194,34 @@ fn tables(
     (data, tables)
 }
 
-/// `[predict]`: each formula as printed from its tree, in order of name.
-fn formulas(section: &Section) -> Vec<(String, String)> {
-    let entries = section.tree().entries.iter();
-    let mut formulas: Vec<(String, String)> = entries
-        .filter_map(|entry| match &entry.value.content {
-            reading::Content::Text(text) => Some((entry.key.text.clone(), printed(text))),
-            _ => None,
+/// `[predict]` as the plan names it, in order of name. That it can be read has been seen by the family.
+fn predictions(section: &Section) -> Vec<Prediction> {
+    let law = |value: &Value| match &value.content {
+        Content::Text(text) => Some(printed(text)),
+        _ => None,
+    };
+    let entries = section.entries().into_iter();
+    entries
+        .filter_map(|(name, value)| {
+            let (law, per, unit) = match &value.content {
+                Content::Tree(tree) => {
+                    let of = |key: &str| tree.get(key).map(|entry| &entry.value);
+                    let unit = of("unit").and_then(|value| match &value.content {
+                        Content::Text(text) => Some(text.text.clone()),
+                        _ => None,
+                    });
+                    (law(of("law")?)?, of("per").map_or(Json::Null, json), unit)
+                }
+                _ => (law(&value)?, Json::Null, None),
+            };
+            Some(Prediction {
+                name: name.text,
+                law,
+                per,
+                unit,
+            })
         })
-        .collect();
-    formulas.sort();
-    formulas
+        .collect()
 }
 
 /// A table as the plan names it.

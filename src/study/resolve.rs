@@ -13,6 +13,8 @@ use std::sync::Arc;
 
 /// After so many points with faults no more are looked at: a person mends these first.
 const FAULTY_POINTS: usize = 20;
+/// Chains over all points: each is keyed before the first draw.
+const MOST_CHAINS: u64 = 1_000_000;
 
 /// Reads a study file and resolves it into a plan, or gives every fault in it, in the order of their places.
 pub fn resolve(file: &Path, registry: &[&dyn Family]) -> Result<Plan, Vec<Fault>> {
@@ -47,6 +49,13 @@ pub fn resolve_text(
             base.into_iter().collect()
         }
     };
+    let chains: u64 = points.iter().map(|point| point.ensemble.chains).sum();
+    if chains > MOST_CHAINS {
+        faults.push(Fault::whole(format!(
+            "the study has {chains} chains over all {} points, and at most {MOST_CHAINS} can be run",
+            points.len()
+        )));
+    }
     let (Some(frame), Some(sweep), false, true) =
         (frame, sweep, points.is_empty(), faults.is_empty())
     else {

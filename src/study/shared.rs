@@ -18,7 +18,7 @@ pub(super) fn shared_content(root: &Section, sweep: &Sweep, point: &Point) -> Js
             .map_or(Json::Null, |entry| spelt(&entry.value))
     };
     let start = match tree.get("ensemble").map(|entry| &entry.value.content) {
-        Some(Content::Tree(ensemble)) => start(ensemble),
+        Some(Content::Tree(ensemble)) => start(ensemble, point),
         _ => Json::text("spread"),
     };
     let resolved = point.shared_parts(
@@ -34,9 +34,18 @@ pub(super) fn shared_content(root: &Section, sweep: &Sweep, point: &Point) -> Js
     ])
 }
 
-fn start(ensemble: &Tree) -> Json {
-    let entry = ensemble.get("start");
-    entry.map_or(Json::text("spread"), |entry| spelt(&entry.value))
+/// The start as written, but a file by its bytes, never by its path.
+fn start(ensemble: &Tree, point: &Point) -> Json {
+    let Some(entry) = ensemble.get("start") else {
+        return Json::text("spread");
+    };
+    match &entry.value.content {
+        Content::Tree(tree) if tree.get("file").is_some() => {
+            let canonical = point.model.canonical();
+            canonical.get("start").cloned().unwrap_or(Json::Null)
+        }
+        _ => spelt(&entry.value),
+    }
 }
 
 /// A value as written, each formula as printed from its tree.

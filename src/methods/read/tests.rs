@@ -275,3 +275,27 @@ fn what_is_reversible() {
     assert_eq!(names, ["invariant", "recurrent", "aperiodic", "reversible"]);
     assert!(conditions[0].evidence.contains("Geman & Geman 1984"));
 }
+
+#[test]
+fn a_covariance_too_large_to_learn_is_a_fault() {
+    let coordinates: Vec<Coordinate> = (0..1001)
+        .map(|i| Coordinate {
+            name: format!("a[{}]", i + 1),
+            unknown: 0,
+            kind: REAL,
+        })
+        .collect();
+    let read_with = |adapt: &str| {
+        let source = Arc::new(Source {
+            name: "study.toml".into(),
+            text: format!("[sampler]\nmethod = \"metropolis\"\n{adapt}"),
+        });
+        let mut faults = Faults::default();
+        let file = parse(&source, &mut faults);
+        let section = file.section("sampler", &mut faults);
+        let sampler = read(section.as_ref(), &coordinates, &["a".into()], &mut faults);
+        (sampler.is_some(), faults.0.len())
+    };
+    assert_eq!(read_with(""), (false, 1));
+    assert_eq!(read_with("adapt = \"scale\"\n"), (true, 0));
+}

@@ -12,7 +12,8 @@ use crate::place::{Fault, Faults};
 ///
 /// A right-censored row contributes the log probability of a value above `of`, a left-censored one of a
 /// value up to `of`, an interval-censored one of a value above `of` and up to `upper`; a row that entered
-/// late is taken given that its value is above `entered`; all times the row's weight.
+/// late is taken given that its value is above `entered` (left-censored, between `entered` and `of`); all times
+/// the row's weight.
 pub fn observe(
     entry: &ObservedEntry,
     names: &Names,
@@ -66,7 +67,11 @@ pub fn observe(
 
     let mut row = law.log_density(graph, of.value);
     if let Some(where_) = left {
-        let below = cumulative(&law.ln_distribution(graph, of.value), entry, &law, faults)?;
+        let below = match entered {
+            Some(entered) => law.ln_interval(graph, entered, of.value),
+            None => law.ln_distribution(graph, of.value),
+        };
+        let below = cumulative(&below, entry, &law, faults)?;
         row = graph.ternary(Ternary::Select, where_, below, row);
     }
     if let (Some(where_), Some(upper)) = (interval, upper) {

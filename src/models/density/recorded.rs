@@ -63,13 +63,11 @@ pub fn resolve(
     let mut quantities = Vec::new();
     let mut values: Vec<Value> = Vec::new();
     if estimands.is_empty() {
-        for (i, unknown) in posterior.unknowns.iter().enumerate() {
-            let value = match unknown.name.split_once('.') {
-                // A completed column is recorded as a whole only where it is asked for.
-                Some(_) => continue,
-                None => names.terms[&unknown.name].value,
-            };
-            values.push(value);
+        // A completed column is recorded as a whole only where it is asked for.
+        let unknowns = posterior.unknowns.iter();
+        let unknowns = unknowns.filter(|unknown| !unknown.name.contains('.'));
+        for (i, unknown) in unknowns.enumerate() {
+            values.push(names.terms[&unknown.name].value);
             quantities.extend(elements(
                 &unknown.name,
                 &unknown.shape,

@@ -155,20 +155,18 @@ fn blame(posterior: &Posterior, coordinates: &[f64], tries: usize) -> String {
     let mut parts = vec![0.0; posterior.part_names.len()];
     posterior.parts.machine(1).run(coordinates, &mut parts);
     let bad = parts.iter().position(|part| !part.is_finite());
-    let tries = match tries {
-        1 => "the start as stated".to_string(),
-        n => format!("none of {n} starts"),
+    let none = match tries {
+        1 => "the start as stated has no density that is finite and above 0".to_string(),
+        n => format!("none of {n} starts has a density that is finite and above 0"),
     };
     match bad {
         Some(i) => format!(
-            "{tries} has a density above 0: {} gives {}; state a start at which it is finite, such as start = {{ at = {{ {} = … }} }}",
+            "{none}: {} gives {}; state a start at which it is, such as start = {{ at = {{ {} = … }} }}",
             posterior.part_names[i],
             words(parts[i]),
             posterior.unknowns[0].name
         ),
-        None => {
-            format!("{tries} has a log density that is finite: its parts are, their sum overflows")
-        }
+        None => format!("{none}: its parts are, their sum overflows"),
     }
 }
 

@@ -235,6 +235,46 @@ fn a_missing_cell_follows_the_observed_law() {
     assert!((again - 5.0).abs() < 0.12, "{again}");
 }
 
+/// Without estimands every unknown is one; a completed column that comes before another unknown is none.
+#[test]
+fn quantities_belong_to_estimands_without_gaps() {
+    let study = r#"
+        [model]
+        family = "density"
+        [model.unknown]
+        zeta = { law = "normal(mean = 0, sd = 1)" }
+        eta = { law = "normal(mean = 0, sd = 1)" }
+        [model.observed]
+        failures = { of = "stations.failures", law = "poisson(mean = stations.hours / 10)" }
+    "#;
+    let model = resolve(study, &stations(true), &StartSpec::Spread, &[]).unwrap();
+    let named = |q: &Quantity| (q.name.clone(), q.estimand);
+    let quantities: Vec<_> = model.quantities().iter().map(named).collect();
+    assert_eq!(quantities, [("eta".into(), 0), ("zeta".into(), 1)]);
+}
+
+/// What was seen to have ended by some time, after it entered, ended between the two: for an exponential law
+/// of rate r, (e^(-r entered) - e^(-r of)) / e^(-r entered).
+#[test]
+fn left_censored_rows_that_entered_late_ended_after_their_entry() {
+    let study = r#"
+        [model]
+        family = "density"
+        [model.unknown]
+        r = { law = "flat()" }
+        [model.observed]
+        hours = { of = "stations.hours", law = "exponential(rate = r)", left = "stations.hours > 0", entered = "10" }
+    "#;
+    let posterior = posterior(study, &stations(false));
+    for rate in [0.003, 0.02, 0.4] {
+        let mut density = [0.0];
+        posterior.target.machine(1).run(&[rate], &mut density);
+        let terms = [94.0, 15.0, 62.0].map(|of: f64| ln(1.0 - (-rate * (of - 10.0)).exp()));
+        let expected: f64 = terms.iter().sum();
+        assert!((density[0] - expected).abs() < 1e-10, "{rate}: {density:?}");
+    }
+}
+
 #[test]
 fn improper_posteriors_that_can_be_seen_are_faults() {
     let tables = stations(false);

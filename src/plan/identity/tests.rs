@@ -71,7 +71,12 @@ fn point(value: f64) -> Point {
             give: vec![Give::Value],
             goal: None,
         }],
-        predict: vec![("next".into(), "poisson(mean = a)".into())],
+        predict: vec![Prediction {
+            name: "next".into(),
+            law: "poisson(mean = a)".into(),
+            per: Json::Null,
+            unit: None,
+        }],
         block: 50,
     }
 }
@@ -138,24 +143,24 @@ const FIELDS: &[(&str, Change, [bool; 3], [bool; 3])] = &[
         ALL,
         CHAIN,
     ),
-    // Under shared streams the plan's `shared` holds what follows from the study in common.
+    // Under shared streams the streams follow `shared`, what the points have in common.
     (
         "model",
         |p| p.points[0].model = model("model", 2),
         ALL,
-        NONE,
+        CHAIN,
     ),
     (
         "sampler",
         |p| p.points[0].model = model("sampler", 2),
         ALL,
-        NONE,
+        CHAIN,
     ),
     (
         "start",
         |p| p.points[0].model = model("start", 2),
         ALL,
-        NONE,
+        CHAIN,
     ),
     (
         "shared",
@@ -167,19 +172,19 @@ const FIELDS: &[(&str, Change, [bool; 3], [bool; 3])] = &[
         "data sha256",
         |p| p.points[0].data[0].sha256 = "01".into(),
         ALL,
-        NONE,
+        CHAIN,
     ),
     (
         "data read",
         |p| p.points[0].data[0].read = Json::Bool(true),
         ALL,
-        NONE,
+        CHAIN,
     ),
     (
         "data name",
         |p| p.points[0].data[0].name = "u".into(),
         ALL,
-        PLAN,
+        CHAIN,
     ),
     (
         "units",
@@ -191,9 +196,9 @@ const FIELDS: &[(&str, Change, [bool; 3], [bool; 3])] = &[
         "burn-in",
         |p| p.points[0].ensemble.burn_in = BurnIn::Fixed(11),
         ALL,
-        NONE,
+        CHAIN,
     ),
-    ("every", |p| p.points[0].ensemble.every = 2, ALL, NONE),
+    ("every", |p| p.points[0].ensemble.every = 2, ALL, CHAIN),
     ("chains", |p| p.points[0].ensemble.chains = 3, PLAN, PLAN),
     ("draws", |p| p.points[0].ensemble.draws = 101, PLAN, PLAN),
     ("no goal", |p| p.points[0].goal = None, PLAN, PLAN),
@@ -239,7 +244,19 @@ const FIELDS: &[(&str, Change, [bool; 3], [bool; 3])] = &[
     ),
     (
         "predict",
-        |p| p.points[0].predict[0].1 = "a".into(),
+        |p| p.points[0].predict[0].law = "a".into(),
+        PLAN,
+        PLAN,
+    ),
+    (
+        "predict per",
+        |p| p.points[0].predict[0].per = Json::Count(2),
+        PLAN,
+        PLAN,
+    ),
+    (
+        "predict unit",
+        |p| p.points[0].predict[0].unit = Some("m".into()),
         PLAN,
         PLAN,
     ),
@@ -282,7 +299,11 @@ fn a_chosen_burn_in_ties_the_chains_together() {
     };
     assert_eq!(with(|p| p.points[0].ensemble.chains = 3), CHAIN);
     assert_eq!(with(|p| p.points[0].estimands[0].of = "b".into()), CHAIN);
-    assert_eq!(with(|p| p.points[0].predict[0].1 = "a".into()), CHAIN);
+    assert_eq!(with(|p| p.points[0].predict[0].law = "a".into()), CHAIN);
+    assert_eq!(
+        with(|p| p.points[0].predict[0].unit = Some("m".into())),
+        PLAN
+    );
     assert_eq!(
         with(|p| p.points[0].estimands[0].unit = Some("m".into())),
         PLAN
@@ -310,6 +331,19 @@ fn chains_and_points_have_keys_of_their_own() {
         assert_ne!(plan.point_key(0), plan.point_key(1));
         assert_ne!(plan.chain_key(0, 0), plan.stream_key(0, 0));
     }
+}
+
+/// The order of the axes in the file shows in the order of the points and nowhere else.
+#[test]
+fn the_order_of_axes_moves_no_draw() {
+    let with = |paths: [&str; 2]| {
+        let mut plan = plan();
+        plan.points[0].values = paths.map(|p| (p.to_string(), Json::real(1.0))).to_vec();
+        plan
+    };
+    let (one, other) = (with(["model.a", "model.b"]), with(["model.b", "model.a"]));
+    assert_eq!(moved(&one, &other), NONE);
+    assert_eq!(one.point_key(0), other.point_key(0));
 }
 
 /// A longer sweep keeps the digits of the points it shares with a shorter one.
