@@ -1,7 +1,5 @@
 //! What journalling costs a draw of ten quantities: its bytes, their hashes, the link, the write.
 
-#![expect(clippy::disallowed_methods, reason = "a bench reads the clock")]
-
 use crate::timing;
 use odograph::course::{Block, Phase, State};
 use odograph::engine::trail::{self, StateHash};
