@@ -8,6 +8,7 @@
 mod sum;
 
 use super::graph::{Graph, Node};
+use super::shape::Shape;
 use crate::laws::{Algebra, Value};
 use crate::maths::{Binary, Ternary, Unary};
 
@@ -93,6 +94,12 @@ pub(super) fn unary(g: &mut Graph, op: Unary, a: Value) -> Value {
             }
         }
         (Unary::Log1p, Node::Unary(Unary::Exp, x)) => return unary(g, Unary::Softplus, x),
+        (Unary::Log1p, Node::Unary(Unary::Negate, share)) => {
+            if let Node::Unary(Unary::Logistic, x) = g.node(share) {
+                let softplus = unary(g, Unary::Softplus, x);
+                return unary(g, Unary::Negate, softplus);
+            }
+        }
         _ => {}
     }
     g.plain_unary(op, a)
@@ -144,9 +151,38 @@ pub(super) fn binary(g: &mut Graph, op: Binary, a: Value, b: Value) -> Value {
         Binary::Divide => divide(g, a, b),
         Binary::Power => power(g, a, b),
         Binary::And | Binary::Or => both(g, op, a, b),
+        Binary::Less if inside_its_range(g, a, b) => Some(always(g, a, b)),
         _ => None,
     };
     simpler.unwrap_or_else(|| g.plain_binary(op, a, b))
+}
+
+/// 0 < e^z, 0 < logistic(z) and logistic(z) < 1, which hold for every number z, though the doubles nearest to
+/// these values reach the ends. A law with infinite density at an end keeps the mass there that no double of its
+/// own is left for: its log density is worked out from z.
+fn inside_its_range(g: &Graph, a: Value, b: Value) -> bool {
+    let number = |v: Value| g.known_number(v);
+    match (g.node(a), g.node(b)) {
+        (_, Node::Unary(Unary::Exp | Unary::Logistic, _)) => number(a) == Some(0.0),
+        (Node::Unary(Unary::Logistic, _), _) => number(b) == Some(1.0),
+        _ => false,
+    }
+}
+
+/// 1, in the shape of a comparison of the two.
+fn always(g: &mut Graph, a: Value, b: Value) -> Value {
+    let shape = if g.is_number(a) {
+        g.shape_of(b)
+    } else {
+        g.shape_of(a)
+    };
+    match shape.clone() {
+        Shape::Number => Algebra::constant(g, 1.0),
+        Shape::Vector(axis) => {
+            let ones = vec![1.0; axis.len];
+            g.data(axis, ones.into())
+        }
+    }
 }
 
 /// The known operand, if any, stands second.
