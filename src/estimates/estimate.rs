@@ -11,6 +11,7 @@ use super::ranks::Ordered;
 use super::rare::{ENOUGH, RARE_SHARE};
 use super::stray::{stray, stuck};
 use super::tail::{tail_index, tail_size};
+use crate::plan::MOST_DRAWS;
 
 /// Draws a chain below which no error, R-hat or effective size is given: 20 batches of two draws.
 pub const MINIMUM_DRAWS: usize = 40;
@@ -110,7 +111,7 @@ pub fn estimate(chains: &[&[f64]], condition: bool, levels: &[f64]) -> Estimate 
     let missing = all().filter(|x| x.is_nan()).count() as u64;
     if total == 0 {
         e.notes.push(Note::NoDraws);
-    } else if total > u64::from(u32::MAX) {
+    } else if total > MOST_DRAWS {
         e.notes.push(Note::TooManyDraws);
     } else if missing > 0 {
         e.notes.push(Note::NotANumber {

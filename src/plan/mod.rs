@@ -8,5 +8,5 @@ mod types;
 pub use block::{block_length, reviews};
 pub use types::{
     Accepted, BurnIn, Combine, Data, Ensemble, Estimand, EstimandGoal, Give, Goal, Input, Keep,
-    NUMERICS, Numerics, Plan, Point, Prediction, Streams, SweepAxis,
+    MOST_DRAWS, NUMERICS, Numerics, Plan, Point, Prediction, Streams, SweepAxis,
 };

@@ -194,6 +194,9 @@ pub struct Prediction {
     pub unit: Option<String>,
 }
 
+/// Draws over all chains that one estimate can take: their places are counted in 32 bits.
+pub const MOST_DRAWS: u64 = u32::MAX as u64;
+
 /// A figure asked of an estimand.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub enum Give {

@@ -2,7 +2,7 @@
 
 use crate::course::StartSpec;
 use crate::place::{Fault, Faults};
-use crate::plan::{BurnIn, Ensemble};
+use crate::plan::{BurnIn, Ensemble, MOST_DRAWS};
 use crate::reading::{self, How, Section, Value};
 use std::path::Path;
 use std::sync::Arc;
@@ -48,6 +48,18 @@ pub(super) fn read(
     count("chains", 1..=MOST_CHAINS, &mut ensemble.chains);
     count("draws", 1..=LONGEST - 1, &mut ensemble.draws);
     count("every", 1..=1_000_000_000, &mut ensemble.every);
+    let all = ensemble.chains.saturating_mul(ensemble.draws);
+    if all > MOST_DRAWS {
+        let place = section.key_place("draws").or(section.key_place("chains"));
+        faults.push(
+            Fault::at(
+                place.unwrap_or_else(|| section.place().clone()),
+                format!("{all} draws over all chains are too many for one estimate"),
+            )
+            .label(format!("at most {} a chain", MOST_DRAWS / ensemble.chains))
+            .help("raise `every` to record fewer of them"),
+        );
+    }
     if let Some(value) = section.value("burn_in") {
         ensemble.burn_in = burn_in(&value, faults).unwrap_or(ensemble.burn_in);
     }

@@ -1,14 +1,13 @@
 //! `[goal]` and the goal of a single estimand.
 
 use crate::place::{Fault, Faults};
-use crate::plan::{Ensemble, EstimandGoal, Goal};
+use crate::plan::{Ensemble, EstimandGoal, Goal, MOST_DRAWS};
 use crate::reading::{Section, Value};
 
 const R_HAT: f64 = 1.01;
 const EFFECTIVE_A_CHAIN: f64 = 100.0;
 /// Draws at most, as a multiple of those of the first review.
 const AT_MOST: u64 = 100;
-const LONGEST: u64 = (1 << 53) - 1;
 
 /// The goal of a point; `implied` by the goal of an estimand even where the study has no `[goal]`. Checked
 /// against the ensemble's draws only if that is `sound`.
@@ -19,11 +18,12 @@ pub(super) fn read(
     implied: bool,
     faults: &mut Faults,
 ) -> Option<Goal> {
+    let longest = MOST_DRAWS / ensemble.chains;
     let mut goal = Goal {
         error: None,
         r_hat: R_HAT,
         effective: EFFECTIVE_A_CHAIN * ensemble.chains as f64,
-        at_most: ensemble.draws.saturating_mul(AT_MOST).min(LONGEST),
+        at_most: ensemble.draws.saturating_mul(AT_MOST).min(longest),
     };
     if !root.has("goal") {
         return implied.then_some(goal);
@@ -44,7 +44,7 @@ pub(super) fn read(
         goal.effective = effective;
     }
     if let Some(value) = section.value("at_most")
-        && let Some(at_most) = value.count(1..=LONGEST, faults)
+        && let Some(at_most) = value.count(1..=longest, faults)
     {
         if at_most >= ensemble.draws || !sound {
             goal.at_most = at_most;

@@ -523,6 +523,21 @@ fn chains_over_all_points_are_bounded() {
     );
 }
 
+/// What no estimate can take is refused before it is drawn.
+#[test]
+fn draws_over_all_chains_are_bounded() {
+    let of = |ensemble: &str| format!("{SHORT}{ensemble}");
+    let most = plan(&of("[ensemble]\nchains = 3\ndraws = 1431655765\n[goal]\n"));
+    let goal = most.points[0].goal.as_ref().expect("a goal");
+    assert_eq!(goal.at_most, 1_431_655_765);
+    assert_eq!(
+        told(&of("[ensemble]\nchains = 3\ndraws = 1431655766\n"))[0].0,
+        "4294967298 draws over all chains are too many for one estimate"
+    );
+    let text = of("[ensemble]\nchains = 3\n[goal]\nat_most = 1431655766\n");
+    assert!(told(&text)[0].0.contains("at_most"));
+}
+
 #[test]
 fn paths_of_all_kinds() {
     use super::overlay::segments;
