@@ -223,7 +223,7 @@ mod tests {
                 "numbers",
                 Json::array(
                     [
-                        333333333.33333329,
+                        "333333333.33333329".parse().expect("a number"),
                         1e30,
                         4.50,
                         2e-3,

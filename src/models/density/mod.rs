@@ -60,7 +60,7 @@ impl Family for DensityFamily {
         let before = faults.count();
         let declared = Declared::read(request.model, request.predict, faults);
         let place = request.model.place();
-        let posterior = Posterior::build(&declared, request.tables, place, before, faults)?;
+        let posterior = Posterior::build(&declared, request.tables, place, faults)?;
         let recorded = recorded::resolve(
             &declared,
             request.estimands,
@@ -68,6 +68,10 @@ impl Family for DensityFamily {
             request.tables,
             faults,
         );
+        if !posterior.undefined.is_empty() {
+            // A step or a start may name what has a fault of its own.
+            return None;
+        }
         let names: Vec<String> = posterior
             .unknowns
             .iter()

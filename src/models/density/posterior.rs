@@ -28,6 +28,8 @@ pub struct Posterior {
     pub graph: Graph,
     /// Names of unknowns and definitions in the order they were taken.
     pub order: Vec<String>,
+    /// Names whose own entry has a fault: what uses them is not looked at, for the fault is elsewhere.
+    pub undefined: BTreeSet<String>,
 }
 
 /// What a name of the model stands for.
@@ -38,13 +40,12 @@ enum Entry<'a> {
 }
 
 impl Posterior {
-    /// Builds it; `None` only with a fault recorded since the count of faults was `before`, which it was when
-    /// the reading of the sections began. Goes on after a fault as far as that can show others.
+    /// Builds it, after a fault as far as that can show others: with a fault recorded it is fit for looking
+    /// at further formulas and for nothing else. `None` only with a fault recorded.
     pub fn build(
         declared: &Declared,
         tables: &BTreeMap<String, Arc<Table>>,
         model: &Place,
-        before: usize,
         faults: &mut Faults,
     ) -> Option<Posterior> {
         unique_names(declared, tables, faults);
@@ -84,9 +85,6 @@ impl Posterior {
             build.entry(name, &entries[name], faults);
         }
         build.likelihood(declared, faults);
-        if faults.count() > before {
-            return None;
-        }
         Some(build.finish(order))
     }
 }
@@ -220,11 +218,15 @@ impl Build<'_> {
     }
 
     fn finish(mut self, order: Vec<String>) -> Posterior {
-        let mut total = self.parts[0].1;
-        for (_, value) in &self.parts[1..] {
-            total = plus(&mut self.graph, total, Some(*value));
-        }
         let values: Vec<Value> = self.parts.iter().map(|(_, value)| *value).collect();
+        let total = match values.split_first() {
+            Some((first, others)) => {
+                let add = |total, value: &Value| plus(&mut self.graph, total, Some(*value));
+                others.iter().fold(*first, add)
+            }
+            // Every unknown has a fault.
+            None => self.graph.constant(0.0),
+        };
         Posterior {
             unknowns: self.unknowns,
             coordinates: self.coordinates,
@@ -234,6 +236,7 @@ impl Build<'_> {
             names: self.names,
             graph: self.graph,
             order,
+            undefined: self.undefined,
         }
     }
 }

@@ -5,12 +5,13 @@ use super::declared::{Declared, LawEntry};
 use super::names::Names;
 use super::posterior::Posterior;
 use super::unknown::fits;
+use super::uses::uses;
 use crate::course::{EstimandSpec, Quantity};
 use crate::formula::{Graph, Kind, LawTerm, Program, Shape, Term, lower, lower_law, parse};
 use crate::laws::Value;
 use crate::place::{Fault, Faults};
 use crate::reading::Table;
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 use std::sync::Arc;
 
 /// The predictions and estimands of a model.
@@ -48,8 +49,15 @@ pub fn resolve(
         .iter()
         .filter_map(|unknown| Some((unknown.name.clone(), unknown.unit.clone()?)))
         .collect();
+    let mut undefined = posterior.undefined.clone();
     for entry in &declared.predictions {
-        if let Some((prediction, term)) = predict(entry, posterior, tables, &mut graph, faults) {
+        let predicted = uses(&entry.law)
+            .is_disjoint(&undefined)
+            .then(|| predict(entry, posterior, tables, &mut graph, faults));
+        if predicted.as_ref().is_none_or(Option::is_none) {
+            undefined.insert(entry.name.text.clone());
+        }
+        if let Some((prediction, term)) = predicted.flatten() {
             predictions.push(prediction);
             names.terms.insert(entry.name.text.clone(), term);
             units.extend(
@@ -78,7 +86,7 @@ pub fn resolve(
         }
     }
     for (i, spec) in estimands.iter().enumerate() {
-        let Some(term) = estimand(spec, &names, &mut graph, faults) else {
+        let Some(term) = estimand(spec, &names, &undefined, &mut graph, faults) else {
             continue;
         };
         let own = units.get(&spec.name.text).filter(|_| spec.of.is_none());
@@ -101,10 +109,14 @@ pub fn resolve(
 fn estimand(
     spec: &EstimandSpec,
     names: &Names,
+    undefined: &BTreeSet<String>,
     graph: &mut Graph,
     faults: &mut Faults,
 ) -> Option<Term> {
     let expr = parse(spec.of.as_ref().unwrap_or(&spec.name), faults)?;
+    if !uses(&expr).is_disjoint(undefined) {
+        return None;
+    }
     lower(&expr, names, graph, faults)
 }
 

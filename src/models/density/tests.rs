@@ -81,7 +81,7 @@ fn posterior(study: &str, tables: &BTreeMap<String, Arc<Table>>) -> Posterior {
     let model = study.section("model", &mut faults).expect("a model");
     model.has("family");
     let declared = Declared::read(&model, None, &mut faults);
-    let posterior = Posterior::build(&declared, tables, model.place(), 0, &mut faults);
+    let posterior = Posterior::build(&declared, tables, model.place(), &mut faults);
     assert!(faults.is_empty(), "{faults:?}");
     posterior.expect("no fault")
 }
