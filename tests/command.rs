@@ -4,8 +4,8 @@ mod common;
 
 use common::{odograph, text};
 use std::fs;
-use std::path::Path;
-use std::process::Output;
+use std::path::{Path, PathBuf};
+use std::process::{Command, Output};
 
 const STUDY: &str = r#"
 title = "One unknown"
@@ -147,17 +147,95 @@ fn check_says_what_would_be_run_and_draws_nothing() {
 }
 
 #[test]
-fn a_folder_that_cannot_be_written_is_5() {
+fn a_place_where_no_folder_can_be_made_is_1() {
     let folder = tempfile::tempdir().unwrap();
     fs::write(folder.path().join("one.toml"), STUDY).unwrap();
     fs::write(folder.path().join("taken"), "a file").unwrap();
-    let output = odograph(folder.path(), &["run", "one.toml", "--into", "taken"]);
-    assert_eq!(status(&output), 5);
-    assert!(
-        text(&output.stderr).contains("taken/one"),
-        "{}",
-        text(&output.stderr)
-    );
+    for into in ["taken", "taken/deeper"] {
+        let output = odograph(folder.path(), &["run", "one.toml", "--into", into]);
+        assert_eq!(status(&output), 1);
+        let said = text(&output.stderr);
+        for part in [
+            &format!("{into}/one"),
+            "cannot be made",
+            "a file stands there",
+            "choose another folder with --into",
+        ] {
+            assert!(said.contains(part), "{part} is missing in:\n{said}");
+        }
+        assert!(!said.contains("goes on from there"), "{said}");
+    }
+}
+
+/// Every file under a folder.
+fn files(folder: &Path) -> Vec<PathBuf> {
+    let mut all = Vec::new();
+    for entry in fs::read_dir(folder).unwrap() {
+        let path = entry.unwrap().path();
+        if path.is_dir() {
+            all.extend(files(&path));
+        } else {
+            all.push(path);
+        }
+    }
+    all
+}
+
+#[test]
+fn a_finished_run_whose_files_changed_is_4_and_tells_no_figures() {
+    let folder = tempfile::tempdir().unwrap();
+    let here = folder.path();
+    fs::write(here.join("t.csv"), "x\n0.3\n-1.2\n0.4\n").unwrap();
+    let data = "[data.t]\nfile = \"t.csv\"\n";
+    let observed = "[[model.observed]]\nof = \"t.x\"\nlaw = \"normal(mean = a, sd = 1)\"\n";
+    let study = STUDY
+        .replace("[model]", &format!("{data}[model]"))
+        .replace("[sampler]", &format!("{observed}[sampler]"));
+    fs::write(here.join("one.toml"), study).unwrap();
+    let run = || odograph(here, &["run", "one.toml"]);
+    let first = run();
+    assert_eq!(status(&first), 0, "{}", text(&first.stderr));
+    let done = fs::read_dir(here.join("results/one")).unwrap().next();
+    let done = done.unwrap().unwrap().path();
+    let refused = |name: &str| {
+        for arguments in [&["run", "one.toml"][..], &["run", "one.toml", "--json"]] {
+            let output = odograph(here, arguments);
+            assert_eq!(status(&output), 4, "{name}: {}", text(&output.stderr));
+            assert_eq!(text(&output.stdout), "", "{name}");
+            let said = text(&output.stderr);
+            assert!(said.contains(name), "{name} is missing in:\n{said}");
+        }
+    };
+    let listed = files(&done.join("data"));
+    assert_eq!(listed.len(), 7, "{listed:?}");
+    for path in &listed {
+        let kept = fs::read(path).unwrap();
+        let mut flipped = kept.clone();
+        let middle = flipped.len() / 2;
+        flipped[middle] ^= 1;
+        fs::write(path, flipped).unwrap();
+        let name = path.strip_prefix(&done).unwrap().to_str().unwrap();
+        refused(&format!("{name} is not as it was when the run ended"));
+        fs::write(path, kept).unwrap();
+    }
+    fs::write(done.join("data/inputs/more.csv"), "x\n").unwrap();
+    refused("data/inputs/more.csv was not there");
+    fs::remove_file(done.join("data/inputs/more.csv")).unwrap();
+    fs::rename(done.join("data/plan.json"), here.join("aside")).unwrap();
+    refused("data/plan.json was there");
+    fs::rename(here.join("aside"), done.join("data/plan.json")).unwrap();
+    let again = run();
+    assert_eq!(status(&again), 0, "{}", text(&again.stderr));
+    assert_eq!(again.stdout, first.stdout);
+    // The list is one that others can check, where they have the means.
+    let sum = Command::new("sha256sum")
+        .args(["--check", "--strict", "manifest-sha256.txt"])
+        .current_dir(&done)
+        .output();
+    match sum {
+        Ok(sum) => assert!(sum.status.success(), "{}", text(&sum.stderr)),
+        Err(fault) => assert_eq!(fault.kind(), std::io::ErrorKind::NotFound),
+    }
 }
 
 #[test]

@@ -137,8 +137,9 @@ fn failed_json(plan: &Plan, failed: &[(usize, &str)]) -> Json {
     Json::object([("points", Json::array(failed.iter().map(point)))])
 }
 
-/// A folder that was finished before, if it is that of this plan.
+/// A folder that was finished before, if its files are those it ended with, and of this plan.
 pub fn again(path: PathBuf, plan: &Plan) -> Result<Filed, RecordFault> {
+    record::check_seal(&path)?;
     let json = |name: &str| {
         let text = record::read(&path, name)?;
         Json::read(&text).map_err(|words| RecordFault::foreign(&path.join(name), &words))

@@ -53,8 +53,9 @@ fn carry_out(file: &Path, into: &Path, threads: Option<u16>) -> Result<Filed, St
     let folder = Folder::of(into, file, &read.plan.digest());
     match folder.enter().map_err(|fault| tell_record(&fault))? {
         Entry::Done(path) => {
+            let filed = outcome::again(path, &read.plan).map_err(|fault| tell_record(&fault))?;
             tell("this study was run before; its results are reported from its files");
-            outcome::again(path, &read.plan).map_err(|fault| tell_record(&fault))
+            Ok(filed)
         }
         Entry::Open(open) => {
             let threads = threads.map_or_else(all_threads, usize::from);
@@ -165,7 +166,10 @@ fn tell_record(fault: &RecordFault) -> Status {
             tell("nothing drawn before is lost; the same command goes on from there");
             Status::Interrupted
         }
-        RecordFault::Input(_) | RecordFault::Foreign { .. } => Status::Fault,
+        RecordFault::Input(_) | RecordFault::Place { .. } | RecordFault::Foreign { .. } => {
+            Status::Fault
+        }
+        RecordFault::Changed { .. } => Status::Broken,
     }
 }
 
@@ -235,6 +239,19 @@ mod tests {
             (RecordFault::Held { path: path(), by }, Status::Interrupted),
             (RecordFault::Disk("x".into()), Status::Interrupted),
             (RecordFault::Input("x".into()), Status::Fault),
+            (
+                RecordFault::Place {
+                    words: words.clone(),
+                },
+                Status::Fault,
+            ),
+            (
+                RecordFault::Changed {
+                    path: path(),
+                    differences: words.clone(),
+                },
+                Status::Broken,
+            ),
             (
                 RecordFault::Foreign {
                     path: path(),

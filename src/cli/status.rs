@@ -16,7 +16,7 @@ pub enum Status {
     Usage,
     /// The study or a file is at fault.
     Fault,
-    /// A replay differs or a seal is broken.
+    /// The files of a finished run are not those it ended with.
     Broken,
     /// The program's own fault.
     Own,

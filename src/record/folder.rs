@@ -5,6 +5,7 @@
 //! <into>/<study>/<first 12 of the plan digest>/          when it is done
 //!   data/study.toml  data/inputs/…                       byte for byte
 //!   data/plan.json  data/summary.json  data/summary.csv  data/summary.txt  data/grounds.json
+//!   manifest-sha256.txt                                  what stands under data/, written last
 //!   circumstances.json                                   one entry a start; outside every digest
 //!   journal                                              the draws
 //!   lock                                                 while it is worked on
@@ -16,6 +17,7 @@
 use super::fault::RecordFault;
 use super::journal::JournalFile;
 use super::lock::Lock;
+use super::seal;
 use crate::canon;
 use crate::engine::trail::Digest;
 use std::fs::{self, File};
@@ -63,9 +65,8 @@ impl Folder {
         if self.done.exists() {
             return Ok(Entry::Done(self.done.clone()));
         }
-        let disk = |fault| RecordFault::disk("make", &self.open, &fault);
         let inputs = self.open.join("data/inputs");
-        fs::create_dir_all(&inputs).map_err(disk)?;
+        fs::create_dir_all(&inputs).map_err(|fault| RecordFault::place(&self.open, &fault))?;
         let lock = Lock::take(&self.open.join("lock"))?;
         if self.done.exists() {
             // Another process ended its run between our look and our lock.
@@ -102,8 +103,9 @@ impl Open {
         })
     }
 
-    /// Gives the folder its name; nothing in it changes any more.
+    /// Lists what stands under `data/` and gives the folder its name; nothing in it changes any more.
     pub fn finish(self) -> Result<PathBuf, RecordFault> {
+        self.write(seal::NAME, seal::list(self.path())?.as_bytes())?;
         let Folder { open, done, .. } = &self.folder;
         let renamed = || -> io::Result<()> {
             for inner in ["data/inputs", "data", ""] {

@@ -3,7 +3,7 @@
 use super::fault::RecordFault;
 use super::moment;
 use std::fs::{File, OpenOptions, TryLockError};
-use std::io::{Read, Write};
+use std::io::{ErrorKind, Read, Write};
 use std::path::Path;
 
 /// Held until dropped.
@@ -15,14 +15,19 @@ pub struct Lock {
 impl Lock {
     /// Takes the lock, or says who has it.
     pub fn take(path: &Path) -> Result<Lock, RecordFault> {
-        let disk = |fault| RecordFault::disk("lock", path, &fault);
+        let disk = |fault: std::io::Error| RecordFault::disk("lock", path, &fault);
         let mut file = OpenOptions::new()
             .read(true)
             .write(true)
             .create(true)
             .truncate(false)
             .open(path)
-            .map_err(disk)?;
+            .map_err(|fault| match fault.kind() {
+                ErrorKind::PermissionDenied | ErrorKind::ReadOnlyFilesystem => {
+                    RecordFault::place(path, &fault)
+                }
+                _ => disk(fault),
+            })?;
         match file.try_lock() {
             Ok(()) => {}
             Err(TryLockError::WouldBlock) => {

@@ -10,6 +10,7 @@ mod lock;
 mod moment;
 mod room;
 mod scan;
+mod seal;
 mod sync;
 
 pub use circumstances::Circumstances;
@@ -18,3 +19,4 @@ pub use folder::{Entry, Folder, Open, read};
 pub use inputs::keep as keep_inputs;
 pub use journal::JournalFile;
 pub use room::{Needs, check as check_room, needs, size};
+pub use seal::check as check_seal;
