@@ -187,7 +187,7 @@ fn a_finished_run_whose_files_changed_is_4_and_tells_no_figures() {
     let here = folder.path();
     fs::write(here.join("t.csv"), "x\n0.3\n-1.2\n0.4\n").unwrap();
     let data = "[data.t]\nfile = \"t.csv\"\n";
-    let observed = "[[model.observed]]\nof = \"t.x\"\nlaw = \"normal(mean = a, sd = 1)\"\n";
+    let observed = "[model.observed]\nx = { of = \"t.x\", law = \"normal(mean = a, sd = 1)\" }\n";
     let study = STUDY
         .replace("[model]", &format!("{data}[model]"))
         .replace("[sampler]", &format!("{observed}[sampler]"));
