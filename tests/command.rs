@@ -147,6 +147,33 @@ fn check_says_what_would_be_run_and_draws_nothing() {
 }
 
 #[test]
+fn check_lists_steps_and_goals_of_estimands() {
+    let own = "[[estimand]]\nname = \"a\"\ngoal = { absolute = 0.02 }\n";
+    let steps = "[[sampler.step]]\nname = \"wide\"\nmethod = \"slice\"\nwidth = 2.5\non = [\"a\"]\nweight = 3\n\
+                 [[sampler.step]]\nname = \"near\"\nmethod = \"metropolis\"\nscale = 0.5\non = [\"a\"]\nweight = 1\n";
+    let study = STUDY
+        .replace("question = \"What does a run say, and where?\"\n", "")
+        .replace(
+            "[sampler]\nmethod = \"metropolis\"\n",
+            &format!("{own}{steps}"),
+        )
+        .replace("chains = 4", "chains = 1");
+    let (_folder, output) = with(&study, &["check", "one.toml"]);
+    let said = text(&output.stdout);
+    assert_eq!(status(&output), 0, "{}", text(&output.stderr));
+    for part in [
+        "One unknown\n\n1 chain of 1000 draws",
+        "  a: error at most 0.02\n",
+        "  wide: slice (width 2.5, limit ",
+        ") on a, weight 3\n",
+        "  near: metropolis (scale 0.5, adapt ",
+        ") on a, weight 1\n",
+    ] {
+        assert!(said.contains(part), "{part} is missing in:\n{said}");
+    }
+}
+
+#[test]
 fn a_place_where_no_folder_can_be_made_is_1() {
     let folder = tempfile::tempdir().unwrap();
     fs::write(folder.path().join("one.toml"), STUDY).unwrap();

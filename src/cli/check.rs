@@ -3,9 +3,9 @@
 use super::output::{say, tell};
 use super::status::Status;
 use super::study;
-use crate::canon;
+use crate::canon::{self, Json};
 use crate::engine::Task;
-use crate::plan::{BurnIn, Goal, Plan, Point};
+use crate::plan::{BurnIn, Estimand, EstimandGoal, Goal, Plan, Point};
 use crate::record;
 use crate::report;
 use std::path::Path;
@@ -32,7 +32,11 @@ pub fn check(file: &Path) -> Status {
 
 fn words(plan: &Plan) -> String {
     let point = &plan.points[0];
-    let mut lines = vec![plan.title.clone(), plan.question.clone(), String::new()];
+    let mut lines = vec![plan.title.clone()];
+    if !plan.question.trim().is_empty() {
+        lines.push(plan.question.clone());
+    }
+    lines.push(String::new());
     if plan.points.len() > 1 {
         lines.push(format!("{} points; the first:", plan.points.len()));
         for (path, value) in &point.values {
@@ -42,7 +46,10 @@ fn words(plan: &Plan) -> String {
     }
     lines.push(ensemble(point));
     lines.push(goal(point.goal.as_ref()));
+    lines.extend(point.estimands.iter().filter_map(own_goal));
     lines.push(quantities(point));
+    lines.push("Steps of the sampler".into());
+    lines.extend(steps(point));
     lines.extend(point.model.reasons());
     lines.push(String::new());
     lines.push(cost(plan));
@@ -72,9 +79,13 @@ fn ensemble(point: &Point) -> String {
         1 => String::new(),
         every => format!(", one recorded every {every} steps"),
     };
+    let chains = match ensemble.chains {
+        1 => "1 chain".to_owned(),
+        chains => format!("{chains} chains"),
+    };
     format!(
-        "{} chains of {} draws{every}, after {burn_in}; blocks of {} draws",
-        ensemble.chains, ensemble.draws, point.block
+        "{chains} of {} draws{every}, after {burn_in}; blocks of {} draws",
+        ensemble.draws, point.block
     )
 }
 
@@ -89,6 +100,64 @@ fn goal(goal: Option<&Goal>) -> String {
         "Goal: {error}R-hat {}, effective size {}; at most {} draws a chain",
         goal.r_hat, goal.effective, goal.at_most
     )
+}
+
+/// The goal of an estimand that has one of its own.
+fn own_goal(estimand: &Estimand) -> Option<String> {
+    let words = match estimand.goal? {
+        EstimandGoal::Absolute(error) => format!("error at most {error}"),
+        EstimandGoal::Relative(part) => format!("error at most {part} of its value"),
+        EstimandGoal::Digits(1) => "1 digit of its standard uncertainty".into(),
+        EstimandGoal::Digits(digits) => format!("{digits} digits of its standard uncertainty"),
+    };
+    Some(format!("  {}: {words}", estimand.name))
+}
+
+/// A step a line: its name, weight, what it moves, and each method with every option.
+fn steps(point: &Point) -> Vec<String> {
+    let model = point.model.canonical();
+    let sampler = model.get("sampler");
+    let items = |json: Option<&Json>| json.map_or(Vec::new(), |list| list.items().to_vec());
+    let texts = |json: Option<&Json>| {
+        let names = items(json);
+        let names = names.iter().filter_map(Json::as_text).map(str::to_owned);
+        names.collect::<Vec<_>>().join(", ")
+    };
+    let told = |json: &Json, name: &str| json.get(name).map(|found| word(found));
+    let step = |step: &Json| {
+        let moves = items(step.get("moves"));
+        let moves = moves.iter().map(|one| {
+            let options = ["scale", "adapt", "width", "limit"].into_iter();
+            let options = options.filter_map(|name| Some(format!("{name} {}", told(one, name)?)));
+            let options = options.collect::<Vec<_>>().join(", ");
+            let method = told(one, "method").unwrap_or_default();
+            match options.is_empty() {
+                true => method,
+                false => format!("{method} ({options})"),
+            }
+        });
+        let moves = moves.collect::<Vec<_>>().join(", ");
+        let weight = told(step, "weight").map_or(String::new(), |w| format!(", weight {w}"));
+        let times = match told(step, "times") {
+            Some(times) if times != "1" => format!(", {times} times a step"),
+            _ => String::new(),
+        };
+        let name = told(step, "name").unwrap_or_default();
+        format!(
+            "  {name}: {moves} on {}{weight}{times}",
+            texts(step.get("on"))
+        )
+    };
+    items(sampler.and_then(|sampler| sampler.get("steps")))
+        .iter()
+        .map(step)
+        .collect()
+}
+
+/// A word as it is, a number as in canonical form.
+fn word(json: &Json) -> String {
+    json.as_text()
+        .map_or_else(|| json.canonical(), str::to_owned)
 }
 
 fn quantities(point: &Point) -> String {

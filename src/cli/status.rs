@@ -4,7 +4,7 @@
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
 pub enum Status {
     Done,
-    /// The goal was missed, or a condition failed (accepted or not).
+    /// The goal was missed, a condition failed (accepted or not), or some points of a sweep found no start.
     Missed,
     /// Two records differ.
     Found,

@@ -12,6 +12,8 @@ pub struct Verdict {
     pub met: bool,
     /// Everything that falls short, worst first.
     pub shortfalls: Vec<Shortfall>,
+    /// Draws a chain that the goal allows.
+    pub at_most: u64,
 }
 
 /// One figure that falls short of the goal.
@@ -33,7 +35,14 @@ impl Verdict {
     pub fn advice(&self) -> Option<String> {
         let worst = self.shortfalls.first()?;
         let remedy = match worst.draws {
-            Some(draws) => format!("about {} draws a chain would do", count(draws)),
+            Some(draws) => {
+                let over = if draws > self.at_most {
+                    format!(", more than the {} allowed", count(self.at_most))
+                } else {
+                    String::new()
+                };
+                format!("about {} draws a chain would do{over}", many(draws))
+            }
             None => "more draws alone may not help".into(),
         };
         Some(format!("{} limits: {}; {remedy}", worst.name, worst.what))
@@ -62,6 +71,7 @@ pub fn review(figures: &[Figure], goal: &Goal) -> Verdict {
     shortfalls.sort_by_key(|s| std::cmp::Reverse(s.draws.unwrap_or(u64::MAX)));
     Verdict {
         met: shortfalls.is_empty(),
+        at_most: goal.at_most,
         shortfalls,
     }
 }
@@ -266,11 +276,23 @@ fn two_digits_up(x: f64) -> u64 {
     ((x / unit).ceil() * unit) as u64
 }
 
+/// A count; past a thousand millions by its first two digits and the power of ten.
+fn many(draws: u64) -> String {
+    if draws < 1_000_000_000 {
+        count(draws)
+    } else {
+        format!("{:.1e}", draws as f64)
+    }
+}
+
 fn whole(x: f64) -> String {
     count(x.round() as u64)
 }
 
 fn decimals(r_hat: f64) -> String {
+    if r_hat > 1000.0 {
+        return ">1000".into();
+    }
     let text = format!("{r_hat:.4}");
     text.trim_end_matches('0').trim_end_matches('.').into()
 }
@@ -336,6 +358,26 @@ mod tests {
             Some("rate[3] limits: effective size 312 of 800; about 5,200 draws a chain would do")
         );
         assert_eq!(verdict.shortfalls.len(), 4);
+    }
+
+    #[test]
+    fn advice_says_when_more_is_wanted_than_allowed() {
+        let mut slow = good();
+        slow.effective_bulk = Some(0.5);
+        let far = review(&[figure(slow.clone())], &goal()).advice();
+        assert_eq!(
+            far.as_deref(),
+            Some(
+                "rate[3] limits: effective size 1 of 800; about 3,200,000 draws a chain would do, more than \
+                 the 100,000 allowed"
+            )
+        );
+        slow.effective_bulk = Some(2e-9);
+        let absurd = review(&[figure(slow)], &goal()).advice().unwrap();
+        assert!(
+            absurd.contains("about 8.0e14 draws a chain would do, more than the 100,000 allowed"),
+            "{absurd}"
+        );
     }
 
     #[test]

@@ -19,7 +19,8 @@ pub fn standing_word(standing: Standing) -> &'static str {
     }
 }
 
-fn rank(standing: Standing) -> u8 {
+/// From 0, proved, up to failed: the higher, the weaker.
+pub fn rank(standing: Standing) -> u8 {
     match standing {
         Standing::Proved => 0,
         Standing::ByConstruction => 1,

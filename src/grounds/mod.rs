@@ -15,4 +15,4 @@ mod evidence;
 mod json;
 
 pub use claim::{Claim, Grounds, grounds};
-pub use condition::{meaning, standing_word, weaker};
+pub use condition::{meaning, rank, standing_word, weaker};

@@ -37,6 +37,22 @@ fn many_points() {
 }
 
 #[test]
+fn a_sweep_shows_the_grounds_of_its_worst_point() {
+    let mut points: Vec<_> = sweep()
+        .into_iter()
+        .map(|s| (s.clone(), standings(&s)))
+        .collect();
+    points[1].1.claims[1].conditions[0].standing = crate::course::Standing::Failed;
+    points[1].1.claims[1].standing = crate::course::Standing::Failed;
+    points[2].1.claims[1].standing = crate::course::Standing::Proved;
+    let got = run_text("Failure rates", "", &points, WIDTH);
+    let flat = got.split_whitespace().collect::<Vec<_>>().join(" ");
+    let heading = "Grounds (of the worst point, model.constant.prior_rate = 1.5, sampler.method = slice; at 2 others";
+    assert!(flat.contains(heading), "{got}");
+    assert!(flat.contains("The error bar holds: failed"), "{got}");
+}
+
+#[test]
 fn files() {
     let s = [summary()];
     let numerics = crate::plan::Numerics {

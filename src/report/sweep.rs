@@ -108,7 +108,7 @@ fn axes(points: &[Summary]) -> Vec<Column> {
     columns
 }
 
-fn value_text(value: &Json) -> String {
+pub(super) fn value_text(value: &Json) -> String {
     match value {
         Json::Text(text) => cell(text),
         other => other.canonical(),

@@ -2,10 +2,10 @@
 
 use super::figures::figures_text;
 use super::grounds_text::grounds_text;
-use super::layout::wrap;
-use super::sweep::sweep_text;
+use super::layout::{cell, wrap};
+use super::sweep::{sweep_text, value_text};
 use crate::estimates::{GoalState, Summary, count};
-use crate::grounds::Grounds;
+use crate::grounds::{Grounds, rank};
 
 /// Stands under every report.
 pub const FOOT: &str = "These figures describe the model as stated. Where one of them bears on safety, local codes and \
@@ -66,23 +66,43 @@ fn effort(s: &Summary) -> String {
     )
 }
 
-/// The grounds of a sweep: those of the first point, and whether others stand differently.
+/// The grounds of a sweep: those of the worst point, which is named where others stand better.
 fn shared_grounds(points: &[(Summary, Grounds)], page: usize) -> String {
     let standings = |g: &Grounds| g.claims.iter().map(|c| c.standing).collect::<Vec<_>>();
-    let Some((_, first)) = points.first() else {
+    let mut rest = points.iter();
+    let Some(mut worst) = rest.next() else {
         return String::new();
     };
+    for point in rest {
+        // Of equals the first stays.
+        if weakness(&point.1) > weakness(&worst.1) {
+            worst = point;
+        }
+    }
+    let (summary, grounds) = worst;
     let other = points
         .iter()
-        .filter(|(_, g)| standings(g) != standings(first))
+        .filter(|(_, g)| standings(g) != standings(grounds))
         .count();
     let heading = if other == 0 {
         "\nGrounds (of the first point; the claims stand alike at all points)\n".to_string()
     } else {
-        format!(
-            "\nGrounds (of the first point; at {} others a claim stands differently, see grounds.json)\n",
+        let values = summary.values.iter();
+        let values = values.map(|(path, value)| format!("{} = {}", cell(path), value_text(value)));
+        let text = format!(
+            "Grounds (of the worst point, {}; at {} others a claim stands differently, see grounds.json)",
+            values.collect::<Vec<_>>().join(", "),
             count(other as u64)
-        )
+        );
+        format!("\n{}", wrap(&text, page, 0, 2))
     };
-    heading + &grounds_text(first, page)
+    heading + &grounds_text(grounds, page)
+}
+
+/// Orders points from the strongest to the weakest: failed conditions of needed claims first, then the standings
+/// of the claims, the weakest of them first.
+fn weakness(grounds: &Grounds) -> (usize, Vec<u8>) {
+    let mut ranks: Vec<u8> = grounds.claims.iter().map(|c| rank(c.standing)).collect();
+    ranks.sort_unstable_by(|a, b| b.cmp(a));
+    (grounds.failed().len(), ranks)
 }
