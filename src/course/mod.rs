@@ -37,8 +37,8 @@ pub struct State {
 pub trait Course: Send {
     /// Chains carried.
     fn chains(&self) -> usize;
-    /// Advances every chain by `draws` draws and gives a block for each, in chain order. The first call
-    /// with [`Phase::Draws`] freezes what was adapted.
+    /// Advances every chain by `draws` draws and gives a block for each, in chain order. With
+    /// [`Phase::Draws`] nothing adapts.
     fn advance(&mut self, phase: Phase, draws: usize) -> Vec<Block>;
     /// The exact state of one chain.
     fn save(&self, chain: usize) -> State;

@@ -173,7 +173,6 @@ impl Walk {
         }
         self.number += 1;
         *self.done_mut(phase) += draws as u64;
-        let first_draws = phase == Phase::Draws && done == 0;
         let mut steps = Vec::with_capacity(blocks.len());
         for (index, block) in blocks.into_iter().enumerate() {
             if (block.draws, block.values.len()) != (draws, draws * self.quantities) {
@@ -184,7 +183,7 @@ impl Walk {
             drop(block);
             let lane = &mut self.lanes[index];
             let frozen_changed = state.frozen != lane.frozen;
-            if frozen_changed && phase == Phase::Draws && !first_draws {
+            if frozen_changed && phase == Phase::Draws {
                 let words = format!("chain {} adapted after its burn-in", lane.chain + 1);
                 return Err(Halt::own(self.point, words));
             }

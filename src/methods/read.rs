@@ -143,7 +143,7 @@ impl Unknowns<'_> {
                 None => names.push(name.clone()),
             }
         }
-        let weight = table.positive("weight", faults);
+        let weight = sane(table, "weight", faults);
         let on = self.on(table, faults);
         let method = method(table, faults)?;
         let options = options(table, method, faults);
@@ -411,6 +411,21 @@ fn method(section: &Section, faults: &mut Faults) -> Option<&'static Method> {
     found
 }
 
+/// The largest scale, width or weight: beyond it sums and ends of intervals overflow.
+const LARGEST: f64 = 1e80;
+
+/// A positive number that leaves room for arithmetic.
+fn sane(section: &Section, key: &str, faults: &mut Faults) -> Option<f64> {
+    let value = section.value(key)?;
+    let number = value.positive(faults)?;
+    if number > LARGEST {
+        let what = format!("`{key}` is {number:e}, the largest taken is {LARGEST:e}");
+        faults.push(Fault::at(value.place.clone(), what).label("too large"));
+        return None;
+    }
+    Some(number)
+}
+
 /// Reads the method's options; one of another method is a fault with that method's name.
 fn options(section: &Section, method: &Method, faults: &mut Faults) -> Option<Options> {
     let before = faults.count();
@@ -436,7 +451,7 @@ fn options(section: &Section, method: &Method, faults: &mut Faults) -> Option<Op
         times: section.count("times", 1..=1_000_000, faults),
     };
     if own("scale") {
-        read.scale = section.positive("scale", faults);
+        read.scale = sane(section, "scale", faults);
     }
     if own("adapt") {
         read.adapt = section
@@ -444,7 +459,7 @@ fn options(section: &Section, method: &Method, faults: &mut Faults) -> Option<Op
             .and_then(Adapt::named);
     }
     if own("width") {
-        read.width = section.positive("width", faults);
+        read.width = sane(section, "width", faults);
     }
     if own("limit") {
         read.limit = section.count("limit", 1..=1_000_000, faults);

@@ -113,14 +113,12 @@ impl Lanes {
         }
         recorder.inputs[..at].copy_from_slice(&self.walkers.position);
         let predictions = &self.model.recorded.predictions;
-        for (quantity, (prediction, machine)) in
-            predictions.iter().zip(&mut recorder.parameters).enumerate()
-        {
+        for (prediction, machine) in predictions.iter().zip(&mut recorder.parameters) {
             let mut numbers = vec![0.0; prediction.parameters.outputs() * lanes];
             machine.run(&self.walkers.position, &mut numbers);
             for lane in 0..lanes {
                 let purpose = Purpose::Prediction {
-                    quantity: quantity as u64,
+                    quantity: prediction.key,
                     draw: self.drawn[lane],
                 };
                 let mut stream = Stream::new(&recorder.keys[lane], purpose);

@@ -11,6 +11,7 @@ use crate::formula::{Graph, Kind, LawTerm, Program, Shape, Term, lower, lower_la
 use crate::laws::Value;
 use crate::place::{Fault, Faults};
 use crate::reading::Table;
+use sha2::{Digest, Sha256};
 use std::collections::{BTreeMap, BTreeSet};
 use std::sync::Arc;
 
@@ -24,6 +25,9 @@ pub struct Recorded {
 
 /// A quantity drawn from a law given the unknowns (`[predict]`).
 pub struct Prediction {
+    /// Seeds its streams: the first 8 bytes of the SHA-256 of its name, so that a further prediction does not
+    /// shift the draws of this one.
+    pub key: u64,
     pub law: LawTerm,
     pub len: usize,
     /// From all coordinates to the law's parameters, the elements of each together.
@@ -185,7 +189,9 @@ fn predict(
         .collect();
     let parameters = Program::compile(&base, &values);
     let value = graph.input(shape.clone());
+    let digest = Sha256::digest(entry.name.text.as_bytes());
     let prediction = Prediction {
+        key: u64::from_le_bytes(digest[..8].try_into().expect("8 bytes")),
         law,
         len: shape.len(),
         parameters,
