@@ -98,6 +98,9 @@ static ODDS_UPPER_QUANTILE: Function = Function {
     },
 };
 
+/// Log odds whose products with counts of trials are doubles still.
+const MOST_ODDS: f64 = 1e290;
+
 /// Probability of success and of failure, the larger one not from the smaller.
 fn chances<'p>(p: &[Term<'p>]) -> [Term<'p>; 2] {
     [p[1].logistic(), (-p[1]).logistic()]
@@ -118,11 +121,18 @@ impl Written for ByLogOdds {
     };
 
     fn log_density<'p>(&self, x: Term<'p>, p: &[Term<'p>]) -> Parts<'p> {
-        // Held to finite numbers: infinite odds times no trial would be no number.
-        let odds = p[1].at_least(-1e300).at_most(1e300);
+        // Held to finite numbers: infinite odds times no trial would be no number. Beyond, the one outcome
+        // that is left is taken for certain.
+        let odds = p[1].at_least(-MOST_ODDS).at_most(MOST_ODDS);
+        let certain = p[1].less(0.0).select(0.0, p[0]);
+        let impossible = p[1]
+            .constant(MOST_ODDS)
+            .less(p[1].abs())
+            .and(1.0 - x.equals(certain));
+        let beyond = impossible.select(f64::NEG_INFINITY, 0.0);
         Parts {
             point: Some(ln_choose(p[0], x)),
-            mixed: Some(x * odds - p[0] * odds.softplus()),
+            mixed: Some(x * odds - p[0] * odds.softplus() + beyond),
             parameters: p[1].constant(0.0),
         }
     }

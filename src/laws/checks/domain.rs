@@ -190,6 +190,69 @@ fn densities_far_out_are_minus_infinity_or_finite_never_no_number() {
     }
 }
 
+/// A formula can make a parameter infinite (`ln(0)`): nothing finite is likely then, except the one outcome
+/// that infinite odds leave.
+#[test]
+fn infinite_parameters_leave_no_finite_density() {
+    let mut tried = 0;
+    for law in table() {
+        let support = law.support();
+        for p in cases(*law) {
+            for at in 0..p.len() {
+                let parameter = law.parameters()[at.min(law.parameters().len() - 1)];
+                for end in [f64::NEG_INFINITY, f64::INFINITY] {
+                    let mut q = p.clone();
+                    q[at] = end;
+                    let (lower, upper) = support.ends(&p);
+                    let odds = parameter.name == "log_odds";
+                    let likely = if end < 0.0 { lower } else { upper };
+                    for x in [-3.0, 0.0, 0.25, 1.0, 2.0, lower, upper] {
+                        if !support.holds(x, &p) {
+                            continue;
+                        }
+                        tried += 1;
+                        let wanted = if odds && x == likely {
+                            0.0
+                        } else {
+                            f64::NEG_INFINITY
+                        };
+                        let found = law.at(&q).log_density(x);
+                        assert!(
+                            (found - wanted).abs() < 1e-9 || found == wanted,
+                            "{} {q:?} at {x}: {found}",
+                            law.usage()
+                        );
+                    }
+                }
+            }
+        }
+    }
+    assert!(tried > 300);
+}
+
+#[test]
+fn binomial_outcomes_that_odds_rule_out() {
+    let binomial = crate::laws::find("binomial", &["trials", "log_odds"]).expect("in the table");
+    for odds in [1e300, 1e308, f64::INFINITY] {
+        for (trials, x, density) in [
+            (20.0, 0.0, 0.0),
+            (20.0, 1.0, f64::NEG_INFINITY),
+            (20.0, 20.0, f64::NEG_INFINITY),
+            (0.0, 0.0, 0.0),
+        ] {
+            let [low, high] = [-odds, odds].map(|odds| binomial.at(&[trials, odds]).log_density(x));
+            assert!((low - density).abs() < 1e-9 || low == density, "{low}");
+            let mirrored = binomial.at(&[trials, odds]).log_density(trials - x);
+            assert!(
+                (mirrored - density).abs() < 1e-9 || mirrored == density,
+                "{mirrored}"
+            );
+            assert!(!high.is_nan());
+        }
+    }
+    assert!(binomial.at(&[20.0, f64::NAN]).log_density(1.0).is_nan());
+}
+
 #[test]
 fn flat_laws_have_a_density_only() {
     let expected = [
