@@ -35,7 +35,7 @@ pub struct How {
 }
 
 /// Faults of one kind shown of a column or of the rows; the rest is counted.
-const SHOWN: usize = 5;
+const SHOWN: usize = 3;
 
 /// Reads a table from the text of its file. `None` only with a fault recorded; a table may be given beside
 /// faults of units and matrices.
@@ -285,6 +285,7 @@ impl<'a> Loader<'a> {
         let names_at = self.how.names.as_ref().and_then(position);
         let mut names: Vec<String> = Vec::new();
         let mut named: BTreeMap<String, Range<usize>> = BTreeMap::new();
+        let mut again = Vec::new();
         let mut starts = Vec::new();
         let mut dropped = Vec::new();
         let mut missing = 0;
@@ -322,13 +323,7 @@ impl<'a> Loader<'a> {
                 let cell = &cells[at];
                 let name = cell.text.to_string();
                 if let Some(first) = named.get(&name).filter(|_| !name.is_empty()) {
-                    let what = format!("two rows of {} are called `{name}`", self.source.name);
-                    found.push(
-                        Fault::at(self.place(cell.span.clone()), what)
-                            .label("the second")
-                            .help("the column of `names` must hold another name in each row")
-                            .related(self.place(first.clone()), "the first"),
-                    );
+                    again.push((number, name.clone(), cell.span.clone(), first.clone()));
                 } else {
                     named.insert(name.clone(), cell.span.clone());
                 }
@@ -340,6 +335,7 @@ impl<'a> Loader<'a> {
             faults.push(self.misquoted(fault));
             return None;
         }
+        found.extend(self.named_twice(&again));
         for (column, &count) in shown.iter().enumerate() {
             if count > SHOWN {
                 let cell = &self.header[self.read[column]];
@@ -390,6 +386,30 @@ impl<'a> Loader<'a> {
             source: self.source.clone(),
             starts,
         })
+    }
+
+    /// One fault for all rows whose names stand before: number, name, its place, and where it stands first.
+    fn named_twice(&self, again: &[(usize, String, Range<usize>, Range<usize>)]) -> Option<Fault> {
+        let (_, name, span, first) = again.first()?;
+        let what = match again {
+            [_] => format!("two rows of {} are called `{name}`", self.source.name),
+            [a, b, more @ ..] => {
+                let more = match more.len() {
+                    0 => String::new(),
+                    more => format!(", and so {more} more"),
+                };
+                format!(
+                    "rows of {} are called like rows before them: row {} `{}`, row {} `{}`{more}",
+                    self.source.name, a.0, a.1, b.0, b.1
+                )
+            }
+            [] => return None,
+        };
+        let fault = Fault::at(self.place(span.clone()), what)
+            .label("the second")
+            .help("the column of `names` must hold another name in each row")
+            .related(self.place(first.clone()), "the first");
+        Some(fault)
     }
 
     fn units(&self, table: &mut Table, faults: &mut Faults) {

@@ -7,6 +7,7 @@ mod file;
 mod load;
 mod parse;
 mod section;
+mod slips;
 mod string;
 mod table;
 mod value;

@@ -2,9 +2,10 @@
 
 use crate::place::{Fault, Faults, Place, Source, Text};
 use crate::reading::section::Section;
+use crate::reading::slips;
 use crate::reading::string::offsets;
 use crate::reading::value::{Content, Entry, Tree, Value};
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 use std::ops::Range;
 use std::sync::Arc;
 use toml::Spanned;
@@ -16,9 +17,32 @@ pub fn parse(source: &Arc<Source>, faults: &mut Faults) -> Section {
     let damaged = !errors.is_empty();
     // Of the faults on one line all but the first follow from it, as a rule; one with advice tells most.
     let mut lines: BTreeMap<usize, Fault> = BTreeMap::new();
+    let (mut looked, mut unquoted_lines) = (BTreeSet::new(), BTreeSet::new());
+    // What stands behind a brace left open is read as if it stood in the braces.
+    let open = errors
+        .iter()
+        .any(|error| error.message().starts_with("unclosed inline table"))
+        .then(|| slips::open_brace(&source.text))
+        .flatten();
+    if let Some(brace) = open {
+        lines.insert(line_of(source, brace), left_open(source, brace));
+    }
     for error in errors {
         let span = error.span().unwrap_or(0..0);
-        let line = source.text[..span.start].matches('\n').count();
+        let line = line_of(source, span.start);
+        // Looked for once a line, which may hold as many faults as bytes.
+        if looked.insert(line)
+            && let Some(fault) = unquoted(source, span.start)
+        {
+            lines.insert(line, fault);
+            unquoted_lines.insert(line);
+        }
+        if unquoted_lines.contains(&line) {
+            continue;
+        }
+        if open.is_some_and(|brace| brace <= span.start) {
+            continue;
+        }
         let fault = syntax(source, span, error.message());
         match lines.get(&line) {
             Some(kept) if kept.help.is_some() || fault.help.is_none() => {}
@@ -34,6 +58,31 @@ pub fn parse(source: &Arc<Source>, faults: &mut Faults) -> Section {
     let reader = Reader { source, damaged };
     let tree = reader.tree("", table.get_ref(), false, faults);
     Section::new(String::new(), whole, Arc::new(tree), false)
+}
+
+/// The number of a line, from 0.
+fn line_of(source: &Source, at: usize) -> usize {
+    source.text[..at].matches('\n').count()
+}
+
+fn left_open(source: &Arc<Source>, brace: usize) -> Fault {
+    Fault::at(place(source, brace..brace + 1), "this brace is not closed")
+        .label("opened here")
+        .help("a table in braces ends with `}`, as in { law = \"…\", per = 4 }")
+}
+
+/// The fault of the line with this byte, if a value stands there that is text without quotes.
+fn unquoted(source: &Arc<Source>, at: usize) -> Option<Fault> {
+    let text = &source.text;
+    let start = text[..at].rfind('\n').map_or(0, |end| end + 1);
+    let end = text[at..].find('\n').map_or(text.len(), |more| at + more);
+    let slip = slips::unquoted(text, start..end)?;
+    let written = &text[slip.value.clone()];
+    let quote = if written.contains('"') { '\'' } else { '"' };
+    let fault = Fault::at(place(source, slip.value.clone()), "text without quotes")
+        .label("text stands in quotes")
+        .help(format!("write {} = {quote}{written}{quote}", slip.key));
+    Some(fault)
 }
 
 /// A fault of syntax, with plainer words and help for the slips that are made most.
