@@ -37,6 +37,8 @@ pub enum Form {
         at: Vec<Expr>,
     },
     Call(Call),
+    /// `[a, b, …]`: at least one.
+    List(Vec<Expr>),
 }
 
 /// `name(arguments)`, `name(key = value, …)`, or first the one, then the other.
@@ -150,6 +152,7 @@ impl Expr {
                 of.visit(visit);
                 at.iter().for_each(|part| part.visit(visit));
             }
+            Form::List(items) => items.iter().for_each(|item| item.visit(visit)),
             Form::Call(call) => {
                 call.arguments.iter().for_each(|part| part.visit(visit));
                 call.named.iter().for_each(|(_, _, part)| part.visit(visit));
@@ -226,6 +229,11 @@ impl fmt::Display for Expr {
                 operand(f, of, binding::ATOM)?;
                 write!(f, "[")?;
                 list(f, &mut at.iter().map(Expr::to_string))?;
+                write!(f, "]")
+            }
+            Form::List(items) => {
+                write!(f, "[")?;
+                list(f, &mut items.iter().map(Expr::to_string))?;
                 write!(f, "]")
             }
             Form::Call(call) => {

@@ -116,6 +116,7 @@ impl Parser<'_> {
             Form::Prefix(_, a) => a.depth,
             Form::Infix(_, a, b) => a.depth.max(b.depth),
             Form::Index { of, at } => at.iter().map(|part| part.depth).fold(of.depth, usize::max),
+            Form::List(items) => items.iter().map(|item| item.depth).max().unwrap_or(0),
             Form::Call(call) => {
                 let named = call.named.iter().map(|(_, _, part)| part.depth);
                 call.arguments
@@ -251,6 +252,7 @@ impl Parser<'_> {
                 }
                 Ok(inner)
             }
+            Word::OpenIndex => self.list(span),
             Word::Name(name) => {
                 self.take();
                 match self.word() {
@@ -274,6 +276,23 @@ impl Parser<'_> {
             }
             _ => Err(self.unexpected("a value")),
         }
+    }
+
+    /// `[a, b, …]`
+    fn list(&mut self, span: Range<usize>) -> Parsed<Expr> {
+        self.take();
+        let mut items = Vec::new();
+        loop {
+            items.push(self.expression(0)?);
+            if !self.took(&Word::Comma) {
+                break;
+            }
+        }
+        if !self.took(&Word::CloseIndex) {
+            return Err(self.unexpected("`,` or `]`"));
+        }
+        let end = self.tokens[self.at - 1].span.end;
+        self.node(Form::List(items), span.start..end)
     }
 
     /// What follows a name and an opening bracket.

@@ -110,6 +110,15 @@ impl Axis {
         })
     }
 
+    /// The element with this number from 1, in words: "row 2 of stations".
+    pub fn numbered(&self, number: usize) -> String {
+        let element = self.element();
+        match (&self.over, element.split_once(' ')) {
+            (Over::Levels { .. }, _) | (_, None) => format!("{element} no. {number}"),
+            (_, Some((what, rest))) => format!("{what} {number} {rest}"),
+        }
+    }
+
     /// What its elements are, in words: "row of stations", "level of stations.site".
     pub fn element(&self) -> String {
         match &self.over {

@@ -294,6 +294,111 @@ fn functions_of_laws() {
 }
 
 #[test]
+fn lists_of_probabilities() {
+    close(
+        "log_density(categorical(probabilities = [0.2, 0.3, 0.5]), 2)",
+        &[maths::ln(0.3)],
+    );
+    close(
+        "log_density(categorical(probabilities = [a, 1 - a]), 1)",
+        &[maths::ln(0.5)],
+    );
+    let outside = value_at(
+        "log_density(categorical(probabilities = [a, 1 - a]), 1)",
+        &[1.5; 18],
+    );
+    assert_eq!(outside, Ok(vec![f64::NEG_INFINITY]));
+    let one = |text: &str| {
+        let found = faults(text);
+        assert_eq!(found.len(), 1, "{text}: {found:?}");
+        found[0].clone()
+    };
+    let law = |list: &str| format!("log_density(categorical(probabilities = {list}), 1)");
+    assert!(one(&law("[0.2, 0.3]")).contains("must sum to 1; the sum is 0.5"));
+    assert!(one(&law("[1.2, a]")).starts_with("1.2 | `probabilities` of `categorical` must be"));
+    assert!(one(&law("[rate, a]")).starts_with("rate | `rate` is not one number"));
+    assert!(one(&law("[]")).starts_with("] | `]` cannot stand here"));
+    assert!(one(&law("[0.5, 0.5")).starts_with(") | `)` cannot stand here"));
+    assert!(one(&law("1")).ends_with("`[0.2, 0.3, 0.5]`, or an unknown with `per`"));
+    for text in ["[1, 2]", "sum([1, 2])", "a * [1]", "[1, 2][1]", "[[1]]"] {
+        assert!(
+            one(text).contains(" | a list of values cannot stand here | "),
+            "{text}"
+        );
+    }
+    let deep = format!("{}1{}", "[".repeat(500), "]".repeat(500));
+    assert!(one(&deep).contains("stand one inside the other"));
+}
+
+#[test]
+fn data_that_is_not_finite_is_told_with_its_row() {
+    let one = |parameter: &str| {
+        let text = format!("log_density(normal(mean = {parameter}, sd = b), t.y)");
+        let found = faults(&text);
+        assert_eq!(found.len(), 1, "{text}: {found:?}");
+        found[0]
+            .split(" | ")
+            .take(2)
+            .collect::<Vec<_>>()
+            .join(" | ")
+    };
+    let row = "depends on data alone and is -inf for row 2 of t; so `mean` is no number there";
+    assert_eq!(
+        one("a + b * ln(t.x1)"),
+        format!("ln(t.x1) | `ln(t.x1)` {row}")
+    );
+    assert_eq!(
+        one("exp(a * ln(t.x1))"),
+        format!("ln(t.x1) | `ln(t.x1)` {row}")
+    );
+    assert_eq!(
+        one("ln(t.x1) - effect[t.site]"),
+        format!("ln(t.x1) | `ln(t.x1)` {row}")
+    );
+    assert!(one("ln(t.x1)").starts_with("ln(t.x1) | `mean` of `normal` must be a finite number"));
+    // Selected away, or finite in the end.
+    for parameter in [
+        "if(t.x1 > 0, a + b * ln(t.x1), 0)",
+        "a + if(t.x1 > 0, ln(t.x1), 0)",
+        "exp(a + ln(t.x1))",
+        "max(a + ln(t.x1), 0)",
+        "a + b * ln(t.y)",
+    ] {
+        value(&format!(
+            "log_density(normal(mean = {parameter}, sd = b), t.y)"
+        ));
+    }
+}
+
+#[test]
+fn slips_of_names_are_told_with_what_was_meant() {
+    let help = |text: &str| {
+        let found = faults(text);
+        assert_eq!(found.len(), 1, "{text}: {found:?}");
+        found[0].rsplit(" | ").next().unwrap().to_string()
+    };
+    assert_eq!(
+        help("log(a)"),
+        "write `ln(x)` for the natural logarithm, `log10(x)` for the one to base 10"
+    );
+    assert_eq!(help("a * y"), "did you mean `t.y`?");
+    assert_eq!(help("dot(x, beta)"), "did you mean `t.x`?");
+    assert_eq!(help("effect[north]"), "write `effect[\"north\"]`");
+    assert_eq!(
+        help("rate[north]"),
+        "known here: `a`, `b`, `k`, `rate`, `effect`, `cross`, `beta`, `t`"
+    );
+    assert_eq!(
+        help("a[\"north\"]"),
+        "leave out the index: `a`, or declare `a` with a value per label: a = { law = \"…\", per = \"table.column\" }"
+    );
+    assert_eq!(
+        help("a[t.site]"),
+        "leave out the index: `a`, or declare `a` with a value per label: a = { law = \"…\", per = \"t.site\" }"
+    );
+}
+
+#[test]
 fn faults_say_where_and_what_would_be_right() {
     let mut wrong = Vec::new();
     let mut fault = |text: &str, want: &str| {
@@ -504,6 +609,7 @@ fn expression() -> impl Strategy<Value = Expr> {
             (any::<bool>(), inner.clone()).prop_map(|(not, a)| {
                 Form::Prefix(if not { Prefix::Not } else { Prefix::Negate }, a.into())
             }),
+            some.clone().prop_map(Form::List),
             (inner, some).prop_map(|(of, at)| Form::Index { of: of.into(), at }),
             (name.clone(), arguments, named).prop_map(|(name, arguments, named)| {
                 Form::Call(Call {

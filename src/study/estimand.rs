@@ -105,6 +105,20 @@ fn give(list: &[Value], faults: &mut Faults) -> Vec<Give> {
     let mut give = Vec::new();
     for value in list {
         let figure = match &value.content {
+            Content::Text(text) if ["mean", "average"].contains(&text.text.as_str()) => {
+                faults.push(
+                    Fault::at(
+                        value.place.clone(),
+                        format!("`{}` cannot be `{}`", value.path, text.text),
+                    )
+                    .label("not known here")
+                    .help(format!(
+                        "write \"value\": it is the mean; beside it can stand {}",
+                        "\"uncertainty\", \"median\" and \"interval\""
+                    )),
+                );
+                None
+            }
             Content::Tree(_) => fraction(value, faults),
             _ => value
                 .word(&["value", "uncertainty", "median", "interval"], faults)

@@ -115,7 +115,9 @@ impl Lowering<'_> {
             }
             (Action::Dot, [a, b]) => self.dot(a, b),
             (Action::If, [c, a, b]) => {
+                let outside = std::mem::replace(&mut self.choosing, true);
                 let (condition, x, y) = (self.condition(c), self.term(a), self.term(b));
+                self.choosing = outside;
                 let (condition, x, y) = (condition?, x?, y?);
                 if x.kind != y.kind {
                     self.fault(
@@ -179,6 +181,9 @@ impl Lowering<'_> {
                 "`{0}` is a value; multiply with `{0} * (…)`, take an element with `{0}[…]`",
                 call.name
             )),
+            _ if ["log", "log_e"].contains(&call.name.as_str()) => Some(
+                "write `ln(x)` for the natural logarithm, `log10(x)` for the one to base 10".into(),
+            ),
             Some(near) => {
                 function::find(near).map(|f| format!("did you mean `{}`, {}?", f.usage, f.about))
             }

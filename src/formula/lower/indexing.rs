@@ -20,6 +20,11 @@ enum Labels {
 impl Lowering<'_> {
     pub(super) fn index(&mut self, of: &Expr, at: &[Expr], place: &Place) -> Option<Term> {
         let vector = self.term(of);
+        if let Some(vector) = &vector
+            && self.label_without_quotes(vector, of, at)
+        {
+            return None;
+        }
         let labels: Vec<Option<Labels>> = at.iter().map(|part| self.index_labels(part)).collect();
         let by_labels = labels.iter().all(Option::is_some);
         let number = match (by_labels, at) {
@@ -28,13 +33,23 @@ impl Lowering<'_> {
         };
         let vector = vector?;
         let Shape::Vector(axis) = vector.shape.clone() else {
+            let mut help = format!("leave out the index: `{of}`");
+            if by_labels && matches!(of.form, Form::Name(_)) {
+                let per = match &at[0].form {
+                    Form::Column { table, column } => format!("{table}.{column}"),
+                    _ => "table.column".into(),
+                };
+                help.push_str(&format!(
+                    ", or declare `{of}` with a value per label: {of} = {{ law = \"…\", per = \"{per}\" }}"
+                ));
+            }
             self.fault(
                 Fault::at(
                     of.place.clone(),
                     format!("`{of}` is one value and has no elements"),
                 )
                 .label("not a vector")
-                .help(format!("leave out the index: `{of}`")),
+                .help(help),
             );
             return None;
         };
@@ -51,6 +66,28 @@ impl Lowering<'_> {
         }
         let labels: Vec<Labels> = labels.into_iter().flatten().collect();
         self.index_by_labels(&vector, &axis, &labels, of, at, place)
+    }
+
+    /// Whether an index is a name that means nothing here but for being a label of the vector's axis.
+    fn label_without_quotes(&mut self, vector: &Term, of: &Expr, at: &[Expr]) -> bool {
+        let ([part], Shape::Vector(axis)) = (at, &vector.shape) else {
+            return false;
+        };
+        let Form::Name(name) = &part.form else {
+            return false;
+        };
+        if self.scope.find(name).is_some() || !axis.labels.contains(name) {
+            return false;
+        }
+        self.fault(
+            Fault::at(
+                part.place.clone(),
+                format!("nothing is called `{name}` here"),
+            )
+            .label("a label stands in quotes")
+            .help(format!("write `{of}[\"{name}\"]`")),
+        );
+        true
     }
 
     fn index_labels(&self, part: &Expr) -> Option<Labels> {

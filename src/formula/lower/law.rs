@@ -1,7 +1,7 @@
 //! Laws with their parameters, and functions of them.
 
 use super::*;
-use crate::laws::{Domain, Law};
+use crate::laws::{Domain, Law, Parameter};
 
 impl Lowering<'_> {
     pub(super) fn law(&mut self, expr: &Expr) -> Option<LawTerm> {
@@ -65,10 +65,19 @@ impl Lowering<'_> {
             self.unknown_law(call);
             return None;
         }
-        let values: Vec<Option<Term>> = call
+        let lists = |name: &str| {
+            let listed = |p: &Parameter| p.name == name && p.domain == Domain::Probabilities;
+            entries
+                .iter()
+                .any(|law| law.parameters().iter().any(listed))
+        };
+        let values: Vec<Option<Vec<Term>>> = call
             .named
             .iter()
-            .map(|(_, _, value)| self.numbers(value))
+            .map(|(name, _, value)| match &value.form {
+                Form::List(items) if lists(name) => self.list(items),
+                _ => self.numbers(value).map(|term| vec![term]),
+            })
             .collect();
         if let Some(first) = call.arguments.first() {
             self.fault(
@@ -82,7 +91,7 @@ impl Lowering<'_> {
             return None;
         }
         let law = self.entry(call, &entries)?;
-        let values: Vec<Term> = values.into_iter().collect::<Option<_>>()?;
+        let values: Vec<Vec<Term>> = values.into_iter().collect::<Option<_>>()?;
         let mut parameters = Vec::new();
         let mut pairs: Vec<(&Term, &Expr)> = Vec::new();
         let mut good = true;
@@ -91,9 +100,18 @@ impl Lowering<'_> {
                 .named
                 .iter()
                 .position(|(name, ..)| name == parameter.name)?;
-            let (term, value) = (&values[at], &call.named[at].2);
+            let value = &call.named[at].2;
+            if let Form::List(items) = &value.form {
+                good &= self
+                    .listed_probabilities(law, parameter.name, &values[at], items, value)
+                    .is_some();
+                parameters.extend(values[at].iter().map(|term| term.value));
+                continue;
+            }
+            let term = &values[at][0];
             good &= self
                 .in_domain(law, parameter.name, parameter.domain, term, value)
+                .and_then(|()| self.finite_parts(parameter.name, term, value))
                 .is_some();
             if parameter.domain == Domain::Probabilities {
                 for element in 0..term.shape.len() {
@@ -198,6 +216,70 @@ impl Lowering<'_> {
         self.fault(fault);
     }
 
+    /// The elements of a list, each one number.
+    fn list(&mut self, items: &[Expr]) -> Option<Vec<Term>> {
+        let terms: Vec<Option<Term>> = items
+            .iter()
+            .map(|item| {
+                let term = self.numbers(item)?;
+                if term.shape == Shape::Number {
+                    return Some(term);
+                }
+                self.fault(
+                    Fault::at(item.place.clone(), format!("`{item}` is not one number"))
+                        .label(term.shape.words())
+                        .help("each element of a list is one number"),
+                );
+                None
+            })
+            .collect();
+        terms.into_iter().collect()
+    }
+
+    /// Checks the elements of a list of probabilities, as far as they are known.
+    fn listed_probabilities(
+        &mut self,
+        law: &dyn Law,
+        name: &str,
+        terms: &[Term],
+        items: &[Expr],
+        list: &Expr,
+    ) -> Option<()> {
+        let mut known = Vec::new();
+        let mut good = true;
+        for (term, item) in terms.iter().zip(items) {
+            good &= self
+                .in_domain(law, name, Domain::Unit, term, item)
+                .is_some();
+            known.extend(self.graph.known_number(term.value));
+        }
+        if !good {
+            return None;
+        }
+        if known.len() < terms.len() {
+            return Some(());
+        }
+        self.sum_to_one(law, name, &known, list)
+    }
+
+    fn sum_to_one(&mut self, law: &dyn Law, name: &str, known: &[f64], value: &Expr) -> Option<()> {
+        let total = crate::maths::sum(known);
+        if (total - 1.0).abs() <= 1e-9 {
+            return Some(());
+        }
+        self.fault(
+            Fault::at(
+                value.place.clone(),
+                format!(
+                    "`{name}` of `{}` must sum to 1; the sum is {total}",
+                    law.name()
+                ),
+            )
+            .label("probabilities"),
+        );
+        None
+    }
+
     /// Checks what is known of a parameter before any draw.
     fn in_domain(
         &mut self,
@@ -214,7 +296,7 @@ impl Lowering<'_> {
                     format!("`{name}` of `{}` is a vector of probabilities", law.name()),
                 )
                 .label("one value")
-                .help("give a vector with one probability for each category"),
+                .help("give one probability for each category: `[0.2, 0.3, 0.5]`, or an unknown with `per`"),
             );
             return None;
         }
@@ -225,7 +307,7 @@ impl Lowering<'_> {
         if let Some((row, x)) = wrong {
             let whose = match &term.shape {
                 Shape::Number => format!("it is {x}"),
-                Shape::Vector(axis) => format!("it is {x} for {} {}", axis.element(), row + 1),
+                Shape::Vector(axis) => format!("it is {x} for {}", axis.numbered(row + 1)),
             };
             self.fault(
                 Fault::at(
@@ -241,20 +323,7 @@ impl Lowering<'_> {
             return None;
         }
         if domain == Domain::Probabilities {
-            let total = crate::maths::sum(&known);
-            if (total - 1.0).abs() > 1e-9 {
-                self.fault(
-                    Fault::at(
-                        value.place.clone(),
-                        format!(
-                            "`{name}` of `{}` must sum to 1; the sum is {total}",
-                            law.name()
-                        ),
-                    )
-                    .label("probabilities"),
-                );
-                return None;
-            }
+            return self.sum_to_one(law, name, &known, value);
         }
         Some(())
     }

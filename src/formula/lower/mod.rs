@@ -23,6 +23,8 @@ pub fn lower(
         scope,
         graph,
         faults,
+        infinite: Vec::new(),
+        choosing: false,
     }
     .term(expr)
 }
@@ -38,6 +40,8 @@ pub fn lower_law(
         scope,
         graph,
         faults,
+        infinite: Vec::new(),
+        choosing: false,
     }
     .law(expr)
 }
@@ -46,6 +50,10 @@ pub(super) struct Lowering<'a> {
     pub scope: &'a dyn Scope,
     pub graph: &'a mut Graph,
     pub faults: &'a mut Faults,
+    /// Vectors of data that are not finite throughout, with the text and place that made them.
+    infinite: Vec<(Value, String, Place)>,
+    /// Inside an `if`.
+    choosing: bool,
 }
 
 impl Lowering<'_> {
@@ -63,6 +71,12 @@ impl Lowering<'_> {
     }
 
     pub fn term(&mut self, expr: &Expr) -> Option<Term> {
+        let term = self.part(expr)?;
+        self.remember(&term, expr);
+        Some(term)
+    }
+
+    fn part(&mut self, expr: &Expr) -> Option<Term> {
         match &expr.form {
             Form::Number(value) => {
                 let value = self.graph.constant(*value);
@@ -91,6 +105,14 @@ impl Lowering<'_> {
             Form::Infix(infix, a, b) => self.infix(*infix, a, b),
             Form::Index { of, at } => self.index(of, at, &expr.place),
             Form::Call(call) => self.call(call, expr),
+            Form::List(_) => {
+                self.fault(
+                    Fault::at(expr.place.clone(), "a list of values cannot stand here")
+                        .label("a list")
+                        .help("lists are the probabilities of `categorical(probabilities = [0.2, 0.8])`; other vectors come from data or from an unknown with `per`"),
+                );
+                None
+            }
         }
     }
 
@@ -146,7 +168,11 @@ impl Lowering<'_> {
                 let called = function::find(name).map(|f| f.usage.to_string());
                 let law = laws::table().iter().find(|law| law.name() == name);
                 let names = self.scope.names();
+                let columns = self.columns_called(name);
                 let help = match (called, law, nearest(name, names.iter().map(String::as_str))) {
+                    _ if !columns.is_empty() => {
+                        Some(format!("did you mean `{}`?", columns.join("` or `")))
+                    }
                     (Some(usage), ..) => Some(format!("the function is called like `{usage}`")),
                     (_, Some(_), _) => Some(format!(
                         "`{name}` is a law; its functions are `log_density({name}(…), x)` and the like"
@@ -162,6 +188,19 @@ impl Lowering<'_> {
                 None
             }
         }
+    }
+
+    /// Columns and matrices of tables here that have this name, as `table.column`.
+    fn columns_called(&self, name: &str) -> Vec<String> {
+        let mut found = Vec::new();
+        for known in self.scope.names() {
+            if let Some(Entity::Table(table)) = self.scope.find(&known)
+                && (table.column(name).is_some() || table.matrix(name).is_some())
+            {
+                found.push(format!("{known}.{name}"));
+            }
+        }
+        found
     }
 
     /// The table called so.
@@ -423,5 +462,6 @@ fn near_label(fault: Fault, label: &str, known: &[&str]) -> Fault {
 }
 
 mod calls;
+mod finite;
 mod indexing;
 mod law;

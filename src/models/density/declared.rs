@@ -1,7 +1,7 @@
 //! The sections of a density model as they stand in the study: parsed, not yet given a meaning.
 
 use crate::formula::{Expr, parse};
-use crate::place::{Fault, Faults, Text};
+use crate::place::{Fault, Faults, Text, nearest};
 use crate::reading::{Content, Section, Value};
 use std::collections::BTreeSet;
 
@@ -92,12 +92,35 @@ impl Declared {
             declared.terms.extend(formula_entry(&name, &value, faults));
         }
         model.finish(faults);
+        declared.misspelt(model);
         for (name, value) in predict.map(Section::entries).unwrap_or_default() {
             declared
                 .predictions
                 .extend(law_entry(&name, &value, faults));
         }
         declared
+    }
+}
+
+/// The sections of a model whose entries formulas can use.
+const NAMING: [&str; 5] = ["constant", "unknown", "define", "observed", "term"];
+
+impl Declared {
+    /// The names declared in sections that a slip has given another name, such as [model.unknowns]: that
+    /// fault is told, and what uses the names is not looked at.
+    fn misspelt(&mut self, model: &Section) {
+        for entry in &model.tree().entries {
+            let key = entry.key.text.as_str();
+            let Content::Tree(tree) = &entry.value.content else {
+                continue;
+            };
+            let Some(meant) = nearest(key, NAMING).filter(|_| !NAMING.contains(&key)) else {
+                continue;
+            };
+            let names = tree.entries.iter().map(|entry| entry.key.text.clone());
+            self.broken.extend(names);
+            self.none_named &= meant != "unknown";
+        }
     }
 }
 
@@ -196,6 +219,13 @@ fn law_entry(name: &Text, value: &Value, faults: &mut Faults) -> Option<LawEntry
 fn per(value: &Value, faults: &mut Faults) -> Option<Per> {
     match &value.content {
         Content::Text(text) if text.text.contains('.') => Some(Per::Levels(vec![text.clone()])),
+        Content::Text(text) if text.text.trim().parse::<u64>().is_ok() => {
+            let fault = Fault::at(value.place.clone(), "a count under `per` is a number")
+                .label("text")
+                .help(format!("write {} without quotes", text.text.trim()));
+            faults.push(fault);
+            None
+        }
         Content::Text(text) => Some(Per::Rows(text.clone())),
         Content::Integer(_) => value
             .count(1..=MOST_ELEMENTS, faults)
