@@ -76,16 +76,20 @@ impl Lowering<'_> {
         let Form::Name(name) = &part.form else {
             return false;
         };
-        if self.scope.find(name).is_some() || !axis.labels.contains(name) {
+        if self.scope.find(name).is_some() {
             return false;
         }
+        let same = |label: &&String| label.eq_ignore_ascii_case(name);
+        let Some(label) = axis.labels.iter().find(same) else {
+            return false;
+        };
         self.fault(
             Fault::at(
                 part.place.clone(),
                 format!("nothing is called `{name}` here"),
             )
             .label("a label stands in quotes")
-            .help(format!("write `{of}[\"{name}\"]`")),
+            .help(format!("write `{of}[\"{label}\"]`")),
         );
         true
     }
