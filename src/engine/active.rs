@@ -180,12 +180,13 @@ impl<'s> Active<'s> {
 
     /// Doubles the burn-in, or ends it.
     pub(super) fn settle(&mut self, settling: Settling) {
-        self.settling = Some(settling);
         let bound = match self.task.burn_in {
             BurnIn::Fixed(draws) => draws,
             BurnIn::Chosen { at_most, .. } => at_most,
         };
-        if settling.settled || self.target >= bound {
+        let settled = settling.settled;
+        self.settling = Some(settling);
+        if settled || self.target >= bound {
             self.begin_draws();
         } else {
             let doubled = self.target * 2;
@@ -217,7 +218,7 @@ impl<'s> Active<'s> {
             point: self.point,
             ended: Ok(Ended {
                 burn_in: self.burn_in,
-                settling: self.settling,
+                settling: self.settling.clone(),
                 draws: self.target,
                 met: verdict.met,
                 figures: verdict.figures,

@@ -287,13 +287,13 @@ impl<'s, J: Judge> Desk<'_, 's, J> {
                 self.outstanding -= 1;
                 let active = self.active.get_mut(&point).expect("under way");
                 let draws = active.target();
-                active.settle(settling);
                 self.sink.event(&Event::BurnInReviewed {
                     point,
                     draws,
-                    r_hat: settling.r_hat,
+                    words: settling.words.clone(),
                     settled: settling.settled,
                 });
+                active.settle(settling);
                 self.proceed(point);
             }
             Message::Reviewed { point, verdict } => {

@@ -4,11 +4,13 @@ use super::columns::Columns;
 use std::sync::atomic::AtomicBool;
 
 /// What a review of the burn-in found.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, PartialEq)]
 pub struct Settling {
     /// The worst R-hat of all quantities, where one exists.
     pub r_hat: Option<f64>,
     pub settled: bool,
+    /// How far the quantities agree, the one that holds it up by name.
+    pub words: String,
 }
 
 /// What a review of the draws found.

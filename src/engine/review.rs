@@ -78,31 +78,18 @@ impl Judge for PlanJudge<'_> {
 
     fn burn_in(&self, point: usize, columns: &Columns) -> Result<Settling, String> {
         let count = self.plan.points[point].model.quantities().len();
-        let mut worst: Option<f64> = None;
-        let mut settled = true;
-        let all: Vec<usize> = (0..count).collect();
-        for some in all.chunks(side_by_side(columns)) {
+        let mut all = Vec::with_capacity(count);
+        let indices: Vec<usize> = (0..count).collect();
+        for some in indices.chunks(side_by_side(columns)) {
             let some: Result<Vec<_>, String> = some
                 .par_iter()
                 .map(|quantity| columns.quantity(*quantity).map(agreement))
                 .collect();
-            for agreement in some? {
-                match agreement {
-                    Agreement::RHat(r_hat) => {
-                        settled &= r_hat < BURN_IN_R_HAT;
-                        if worst.is_none_or(|worst| r_hat > worst) {
-                            worst = Some(r_hat);
-                        }
-                    }
-                    Agreement::Constant => {}
-                    Agreement::None => settled = false,
-                }
-            }
+            all.extend(some?);
         }
-        Ok(Settling {
-            r_hat: worst,
-            settled,
-        })
+        let names = self.plan.points[point].model.quantities();
+        let names: Vec<&str> = names.iter().map(|q| q.name.as_str()).collect();
+        Ok(settling(&names, &all))
     }
 
     fn review(
@@ -148,23 +135,59 @@ enum Agreement {
     RHat(f64),
     /// Every draw of every chain is the same.
     Constant,
-    /// Not to be told: chains that stand still apart, or draws that are not numbers.
-    None,
+    /// Not to be told, and why: chains that stand still apart, or draws that are not numbers.
+    None(&'static str),
+}
+
+/// What the agreements say together. A constant quantity counts as settled.
+fn settling(names: &[&str], all: &[Agreement]) -> Settling {
+    let mut worst: Option<(&str, f64)> = None;
+    let mut without: Option<(&str, &str)> = None;
+    let mut constant = 0;
+    for (name, agreement) in names.iter().zip(all) {
+        match agreement {
+            Agreement::RHat(r_hat) if worst.is_none_or(|(_, worst)| *r_hat > worst) => {
+                worst = Some((name, *r_hat));
+            }
+            Agreement::RHat(_) => {}
+            Agreement::Constant => constant += 1,
+            Agreement::None(why) => without = without.or(Some((name, why))),
+        }
+    }
+    let mut words = match (without, worst) {
+        (Some((name, why)), _) => format!("no R-hat of {name}, {why}"),
+        (None, Some((name, r_hat))) if r_hat > 1000.0 => format!("largest R-hat >1000 ({name})"),
+        (None, Some((name, r_hat))) => format!("largest R-hat {r_hat:.3} ({name})"),
+        (None, None) => "no quantity varies".into(),
+    };
+    match constant {
+        0 => {}
+        1 => words.push_str(", 1 constant quantity counts as settled"),
+        many => words.push_str(&format!(", {many} constant quantities count as settled")),
+    }
+    Settling {
+        r_hat: worst.map(|(_, r_hat)| r_hat),
+        settled: without.is_none() && worst.is_none_or(|(_, r_hat)| r_hat < BURN_IN_R_HAT),
+        words,
+    }
 }
 
 fn agreement(draws: Vec<Vec<f64>>) -> Agreement {
     let all = || draws.iter().flatten();
     if all().any(|x| x.is_nan()) {
-        return Agreement::None;
+        return Agreement::None("some of whose draws are not numbers");
     }
     let first = draws.first().and_then(|chain| chain.first());
     if all().all(|x| Some(x) == first) {
         return Agreement::Constant;
     }
     let chains: Vec<&[f64]> = draws.iter().map(Vec::as_slice).collect();
-    match estimates::r_hat(&chains).larger() {
+    match estimates::r_hat(&chains)
+        .larger()
+        .filter(|r_hat| !r_hat.is_nan())
+    {
         Some(r_hat) => Agreement::RHat(r_hat),
-        None => Agreement::None,
+        None => Agreement::None("whose chains stand still apart"),
     }
 }
 
@@ -186,4 +209,32 @@ pub fn summary(plan: &Plan, end: &PointEnd<Reviewed>) -> Option<Summary> {
         advice: ended.figures.advice.clone(),
         figures: ended.figures.figures.clone(),
     })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn what_holds_a_burn_in_up_is_named() {
+        let told = |all: &[Agreement]| {
+            let found = settling(&["a", "b", "c"], all);
+            (found.settled, found.words)
+        };
+        let not_numbers = agreement(vec![vec![0.5, f64::NAN]; 2]);
+        let (settled, words) = told(&[Agreement::RHat(1.0), not_numbers, Agreement::Constant]);
+        assert!(!settled);
+        assert!(
+            words.starts_with("no R-hat of b, some of whose draws are not numbers"),
+            "{words}"
+        );
+        let (settled, words) = told(&[Agreement::RHat(1.0), Agreement::RHat(1.2)]);
+        assert_eq!((settled, &*words), (false, "largest R-hat 1.200 (b)"));
+        let (settled, words) = told(&[Agreement::RHat(1.883e15)]);
+        assert_eq!((settled, &*words), (false, "largest R-hat >1000 (a)"));
+        let constant = || agreement(vec![vec![2.0; 4]; 2]);
+        let (settled, words) = told(&[constant(), constant()]);
+        let expected = "no quantity varies, 2 constant quantities count as settled";
+        assert_eq!((settled, &*words), (true, expected));
+    }
 }

@@ -92,11 +92,11 @@ pub enum Event {
         phase: Phase,
         draws: u64,
     },
-    /// A review of the burn-in: the worst R-hat over its last half, against the bound.
+    /// A review of the burn-in: in words, how far the chains agree over its last half.
     BurnInReviewed {
         point: usize,
         draws: u64,
-        r_hat: Option<f64>,
+        words: String,
         settled: bool,
     },
     /// A review of the goal.

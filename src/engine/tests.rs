@@ -112,6 +112,7 @@ impl Judge for Scripted {
         );
         Ok(Settling {
             r_hat: Some(1.0),
+            words: String::new(),
             settled: columns.draws() * 2 >= self.settled,
         })
     }

@@ -41,13 +41,11 @@ pub fn review(event: &Event, pace: &Pace) -> Option<String> {
         Event::BurnInReviewed {
             point,
             draws,
-            r_hat,
+            words,
             settled,
         } => {
-            let r_hat = r_hat.map_or("not to be had".into(), |r_hat| format!("{r_hat:.3}"));
             let end = if *settled { "settled" } else { "not settled" };
-            let words =
-                format!("burn-in of {draws} a chain: R-hat over its last half {r_hat}, {end}");
+            let words = format!("burn-in of {draws} a chain, its last half: {words}; {end}");
             (*point, words)
         }
         Event::Reviewed {

@@ -24,6 +24,7 @@ impl Judge for Bits {
     fn burn_in(&self, _: usize, columns: &Columns) -> Result<Settling, String> {
         Ok(Settling {
             r_hat: None,
+            words: String::new(),
             settled: columns.draws() >= 80,
         })
     }
