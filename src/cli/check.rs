@@ -123,7 +123,7 @@ fn steps(point: &Point) -> Vec<String> {
         let names = names.iter().filter_map(Json::as_text).map(str::to_owned);
         names.collect::<Vec<_>>().join(", ")
     };
-    let told = |json: &Json, name: &str| json.get(name).map(|found| word(found));
+    let told = |json: &Json, name: &str| json.get(name).map(word);
     let step = |step: &Json| {
         let moves = items(step.get("moves"));
         let moves = moves.iter().map(|one| {
