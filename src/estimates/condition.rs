@@ -52,9 +52,13 @@ pub(super) fn estimate_condition(e: &mut Estimate, chains: &[&[f64]]) {
     if !still.is_empty() {
         e.notes.push(Note::Stuck { chains: still });
     }
+    e.note_disagreement();
     let rarer = if share < 0.5 { share } else { 1.0 - share };
     let independent = size.map(|s| if s < total as f64 { s } else { total as f64 });
-    if rarer <= RARE_SHARE && independent.is_some_and(|s| rarer * s < ENOUGH) {
+    if !e.chains_disagree()
+        && rarer <= RARE_SHARE
+        && independent.is_some_and(|s| rarer * s < ENOUGH)
+    {
         e.notes.push(Note::Rare {
             seen,
             of: total,

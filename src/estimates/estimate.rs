@@ -19,6 +19,9 @@ pub const MINIMUM_DRAWS: usize = 40;
 const FEW: f64 = 100.0;
 /// R-hat above this stands in the notes.
 const UNMIXED: f64 = 1.05;
+/// ... and above this no error is given: the bound in common use since Gelman & Rubin (1992). Errors count
+/// what moves within chains, and so say too little where chains lie apart.
+const DISAGREE: f64 = 1.1;
 
 /// What the draws say about one quantity. A figure that does not exist is `None`, with the reason in
 /// `notes`; nothing here is ever NaN or infinite but `value` and quantiles of infinite draws.
@@ -69,9 +72,14 @@ pub struct QuantileEstimate {
 impl Estimate {
     /// Are errors withheld because chains stand still or disagree?
     pub fn chains_disagree(&self) -> bool {
-        self.notes
-            .iter()
-            .any(|n| matches!(n, Note::AllStuck | Note::Stuck { .. } | Note::Stray { .. }))
+        self.notes.iter().any(Note::is_disagreement)
+    }
+
+    /// Notes an R-hat above which there is no error.
+    pub(super) fn note_disagreement(&mut self) {
+        if let Some(r_hat) = self.r_hat.filter(|r| *r > DISAGREE) {
+            self.notes.push(Note::Disagree { r_hat });
+        }
     }
 }
 
@@ -188,6 +196,7 @@ fn estimate_number(e: &mut Estimate, chains: &[&[f64]]) {
     if !still.is_empty() {
         e.notes.push(Note::Stuck { chains: still });
     }
+    e.note_disagreement();
     let efficiency = e
         .effective_tail
         .or(e.effective_bulk)
@@ -316,7 +325,7 @@ pub(super) fn cautions(e: &mut Estimate) {
     if e.chains == 1 {
         e.notes.push(Note::OneChain);
     }
-    if let Some(r_hat) = e.r_hat.filter(|r| *r > UNMIXED) {
+    if let Some(r_hat) = e.r_hat.filter(|r| *r > UNMIXED && *r <= DISAGREE) {
         e.notes.push(Note::NotMixed { r_hat });
     }
     let least = match (e.effective_bulk, e.effective_tail) {

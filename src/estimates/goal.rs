@@ -126,6 +126,10 @@ fn lacks(figure: &Figure, goal: &Goal) -> Vec<(String, Option<f64>)> {
         return out;
     }
     let (Some(mcse), Some(sd)) = (e.mcse, e.sd) else {
+        // Chains that disagree lack R-hat, which is said above and has a remedy.
+        if e.r_hat.is_some_and(|r| r > goal.r_hat) && e.chains_disagree() {
+            return out;
+        }
         let why = e
             .notes
             .iter()

@@ -34,6 +34,10 @@ pub enum Note {
         of: usize,
         errors: f64,
     },
+    /// R-hat above 1.1.
+    Disagree {
+        r_hat: f64,
+    },
     /// All but a few draws are this value; not a condition.
     NearlyConstant {
         value: f64,
@@ -73,6 +77,14 @@ pub enum Note {
 }
 
 impl Note {
+    /// Do the chains stand still or disagree, so that no error is given?
+    pub fn is_disagreement(&self) -> bool {
+        matches!(
+            self,
+            Note::AllStuck | Note::Stuck { .. } | Note::Stray { .. } | Note::Disagree { .. }
+        )
+    }
+
     /// Is it about a quantity that always, or nearly always, had one value?
     pub fn is_seldom(&self) -> bool {
         matches!(
@@ -184,6 +196,9 @@ impl fmt::Display for Note {
                 "the {of} chains fall into groups whose means lie {} errors apart, so no error is given",
                 short(*errors)
             ),
+            Note::Disagree { r_hat } => {
+                write!(f, "chains disagree (R-hat {}): no error", three(*r_hat))
+            }
             Note::NearlyConstant { value, others, of } => write!(
                 f,
                 "all but {} of {} draws are {}: too few others for an error",
@@ -279,6 +294,15 @@ impl fmt::Display for Note {
                 )
             }
         }
+    }
+}
+
+/// R-hat in three digits, final zeros too.
+fn three(r_hat: f64) -> String {
+    if r_hat < 100.0 {
+        format!("{r_hat:.2}")
+    } else {
+        short(r_hat)
     }
 }
 

@@ -266,6 +266,34 @@ mod tests {
     }
 
     #[test]
+    fn a_start_not_forgotten_brings_the_error_bar_down() {
+        // Far from 0, each chain creeps on its own: no error, and the claim fails by this quantity.
+        let chains: Vec<Vec<f64>> = (0..8)
+            .map(|c| {
+                (0..200)
+                    .map(|i| 996.0 + f64::from(c) * 0.1 + f64::from(i * 7 % 11) * 0.01)
+                    .collect()
+            })
+            .collect();
+        let chains: Vec<&[f64]> = chains.iter().map(Vec::as_slice).collect();
+        let e = crate::estimates::estimate(&chains, false, &[0.5]);
+        assert!(e.value.is_some() && e.mcse.is_none() && e.sd_mcse.is_none());
+        assert!(e.quantiles[0].value.is_some() && e.quantiles[0].mcse.is_none());
+        let mut disagree = Estimate {
+            r_hat: Some(1.7),
+            ..Estimate::default()
+        };
+        disagree.notes.push(Note::Disagree { r_hat: 1.7 });
+        let g = grounds(&[], Some(&summary(disagree)), &Accepted::default());
+        assert_eq!(g.failed()[0].name, "start forgotten");
+        assert_eq!(
+            g.failed()[0].evidence,
+            "b: chains disagree (R-hat 1.70): no error"
+        );
+        assert!(e.notes.iter().any(|n| matches!(n, Note::Disagree { .. })));
+    }
+
+    #[test]
     fn failed_conditions_stop_unless_accepted() {
         let model = [
             condition("irreducible", Standing::Failed),

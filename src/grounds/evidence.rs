@@ -48,11 +48,7 @@ pub(super) fn weigh(condition: Condition, summary: &Summary) -> Condition {
 /// The first figure whose chains stand still or disagree, with the note.
 fn disagreement(summary: &Summary) -> Option<(&Figure, &Note)> {
     summary.figures.iter().find_map(|figure| {
-        let note = figure
-            .estimate
-            .notes
-            .iter()
-            .find(|n| matches!(n, Note::AllStuck | Note::Stuck { .. } | Note::Stray { .. }))?;
+        let note = figure.estimate.notes.iter().find(|n| n.is_disagreement())?;
         Some((figure, note))
     })
 }
