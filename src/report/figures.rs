@@ -46,7 +46,12 @@ fn main_table(summary: &Summary, notes: &Notes, page: usize) -> String {
             cell(&f.name),
             f.unit.as_deref().map(cell).unwrap_or_default(),
             asked(Give::Value, figure(e.value, e.mcse)),
-            asked(Give::Uncertainty, e.sd.map_or(DASH.into(), three_digits)),
+            // The spread of 0 and 1 says nothing that the probability does not.
+            if f.condition {
+                String::new()
+            } else {
+                asked(Give::Uncertainty, e.sd.map_or(DASH.into(), three_digits))
+            },
             intervals(f, interval.is_none()),
             e.r_hat.map_or(DASH.into(), r_hat),
             size(e.effective_bulk),
