@@ -1,7 +1,7 @@
 //! The grounds of a point as plain text.
 
 use super::layout::{Side, pad, wrap};
-use crate::course::Condition;
+use crate::course::{Condition, Standing};
 use crate::grounds::{Claim, Grounds, standing_word};
 
 /// Each claim with its standing, then the conditions it rests on. A condition already told under an earlier
@@ -52,27 +52,42 @@ fn claim_text<'a>(
     for condition in &claim.conditions {
         if !told.contains(&condition.name) {
             told.push(condition.name);
-            line(out, condition, grounds, 2, page);
+            line(
+                out,
+                condition,
+                standing_word(condition.standing),
+                grounds,
+                2,
+                page,
+            );
         }
     }
     for (i, way) in claim.ways.iter().enumerate() {
         out.push_str(if i == 0 { "  and either\n" } else { "  or\n" });
         for condition in way {
             told.push(condition.name);
-            line(out, condition, grounds, 4, page);
+            // One way of two that is not open is no alarm while the other is.
+            let word = match (condition.standing, claim.standing) {
+                (Standing::Failed, standing) if standing != Standing::Failed => "not so",
+                (standing, _) => standing_word(standing),
+            };
+            line(out, condition, word, grounds, 4, page);
         }
     }
 }
 
-fn line(out: &mut String, condition: &Condition, grounds: &Grounds, indent: usize, page: usize) {
+fn line(
+    out: &mut String,
+    condition: &Condition,
+    word: &str,
+    grounds: &Grounds,
+    indent: usize,
+    page: usize,
+) {
     const EVIDENCE: usize = 44;
     let name = format!("{}{}", " ".repeat(indent), condition.name);
     out.push_str(&pad(&name, 26, Side::Left));
-    out.push_str(&pad(
-        standing_word(condition.standing),
-        EVIDENCE - 26,
-        Side::Left,
-    ));
+    out.push_str(&pad(word, EVIDENCE - 26, Side::Left));
     let accepted = if grounds.accepts(condition.name) {
         "accepted by the study; "
     } else {
