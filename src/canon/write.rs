@@ -213,10 +213,6 @@ mod tests {
 
     /// RFC 8785, section 3.2.2 (from memory): numbers, strings and literals.
     #[test]
-    #[expect(
-        clippy::excessive_precision,
-        reason = "the number as the RFC writes it"
-    )]
     fn sample_of_the_rfc() {
         let value = Json::object([
             (

@@ -77,7 +77,11 @@ impl Estimate {
 
     /// Notes an R-hat above which there is no error.
     pub(super) fn note_disagreement(&mut self) {
-        if let Some(r_hat) = self.r_hat.filter(|r| *r > DISAGREE) {
+        // Chains that stand still or stray have been named, which says more.
+        if let Some(r_hat) = self
+            .r_hat
+            .filter(|r| *r > DISAGREE && !self.chains_disagree())
+        {
             self.notes.push(Note::Disagree { r_hat });
         }
     }
@@ -196,7 +200,6 @@ fn estimate_number(e: &mut Estimate, chains: &[&[f64]]) {
     if !still.is_empty() {
         e.notes.push(Note::Stuck { chains: still });
     }
-    e.note_disagreement();
     let efficiency = e
         .effective_tail
         .or(e.effective_bulk)
@@ -217,6 +220,7 @@ fn estimate_number(e: &mut Estimate, chains: &[&[f64]]) {
             e.sd_mcse = error_of_sd(&scaled, centre, draws);
         }
     }
+    e.note_disagreement();
     errors_of_quantiles(e, chains, sorted);
     cautions(e);
 }
@@ -262,6 +266,7 @@ pub(super) fn set_error(
             errors,
         });
     }
+    e.note_disagreement();
     if e.chains_disagree() {
         return;
     }

@@ -174,6 +174,14 @@ fn monte_carlo_errors() {
                         .any(|n| matches!(n, Note::Stray { chains, .. } if chains == &[3]))
                 );
             }
+            "scaled" => {
+                // One chain's spread is another's many times over: the folded R-hat lies above 1.1.
+                assert!(
+                    e.chains_disagree() && e.mcse.is_none() && shown == [None; 3],
+                    "{e:?}"
+                );
+                assert!(e.notes.iter().any(|n| matches!(n, Note::Disagree { .. })));
+            }
             "cauchy" => {
                 assert!(
                     e.mcse.is_none() && e.sd.is_none() && e.value.is_some(),

@@ -290,7 +290,7 @@ mod tests {
             g.failed()[0].evidence,
             "b: chains disagree (R-hat 1.70): no error"
         );
-        assert!(e.notes.iter().any(|n| matches!(n, Note::Disagree { .. })));
+        assert!(e.chains_disagree());
     }
 
     #[test]

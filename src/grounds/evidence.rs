@@ -21,7 +21,7 @@ pub(super) fn weigh(condition: Condition, summary: &Summary) -> Condition {
         "recurrent" => reach(summary).map(|(standing, words)| match standing {
             Standing::NotContradicted => (
                 standing,
-                "the chains came together from different starts; starts that none of them had are not seen".into(),
+                "the chains came together from their starts; starts that none of them had are not seen".into(),
             ),
             _ => (standing, words),
         }),
@@ -83,7 +83,7 @@ fn reach(summary: &Summary) -> Option<(Standing, String)> {
     Some((
         standing,
         format!(
-            "{} chains from different starts, largest R-hat {r_hat:.3} ({}); a region that no chain visited \
+            "{} chains, largest R-hat {r_hat:.3} ({}); a region that no chain visited \
              would not show",
             summary.chains, figure.name
         ),

@@ -108,11 +108,10 @@ The average converges: assumed
   invariant               by construction   random walk with Metropolis acceptance leaves the
                                             target's law as it is; what is adapted in burn-in is
                                             frozen before the first draw
-  irreducible             not contradicted  8 chains from different starts, largest R-hat 1.002
-                                            (rate["Cawdle"]); a region that no chain visited would
-                                            not show
-  recurrent               not contradicted  the chains came together from different starts; starts
-                                            that none of them had are not seen
+  irreducible             not contradicted  8 chains, largest R-hat 1.002 (rate["Cawdle"]); a region
+                                            that no chain visited would not show
+  recurrent               not contradicted  the chains came together from their starts; starts that
+                                            none of them had are not seen
   integrable              not contradicted  largest tail index 0.62 (b), under 1; a tail that begins
                                             beyond the draws would not show
 The error bar holds: not known
@@ -155,11 +154,10 @@ The average converges: assumed
   invariant               by construction   random walk with Metropolis acceptance leaves the
                                             target's law as it is; what is adapted in burn-in is
                                             frozen before the first draw
-  irreducible             not contradicted  8 chains from different starts, largest R-hat 1.002
-                                            (rate["Cawdle"]); a region that no chain visited would
-                                            not show
-  recurrent               not contradicted  the chains came together from different starts; starts
-                                            that none of them had are not seen
+  irreducible             not contradicted  8 chains, largest R-hat 1.002 (rate["Cawdle"]); a region
+                                            that no chain visited would not show
+  recurrent               not contradicted  the chains came together from their starts; starts that
+                                            none of them had are not seen
   integrable              not contradicted  largest tail index 0.62 (b), under 1; a tail that begins
                                             beyond the draws would not show
 The error bar holds: not known

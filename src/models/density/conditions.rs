@@ -2,12 +2,21 @@
 
 use super::declared::Declared;
 use super::posterior::Posterior;
+use super::start::Start;
 use crate::course::{Condition, Standing};
 use crate::methods::Sampler;
 
 /// Conditions of the model, then those of the sampler.
-pub fn of(declared: &Declared, posterior: &Posterior, sampler: &Sampler) -> Vec<Condition> {
-    let mut conditions = vec![finite_mass(declared, posterior), irreducible(posterior)];
+pub fn of(
+    declared: &Declared,
+    posterior: &Posterior,
+    sampler: &Sampler,
+    start: &Start,
+) -> Vec<Condition> {
+    let mut conditions = vec![
+        finite_mass(declared, posterior),
+        irreducible(posterior, start),
+    ];
     conditions.extend(sampler.conditions());
     conditions
 }
@@ -45,7 +54,7 @@ fn finite_mass(declared: &Declared, posterior: &Posterior) -> Condition {
     }
 }
 
-fn irreducible(posterior: &Posterior) -> Condition {
+fn irreducible(posterior: &Posterior, start: &Start) -> Condition {
     let integers = posterior.unknowns.iter().any(|unknown| unknown.integer);
     let evidence = if integers {
         "continuous moves reach every neighbourhood, integer moves every value, unless the density is 0 between parts of its support; a mode that no chain visited cannot be seen"
@@ -55,6 +64,13 @@ fn irreducible(posterior: &Posterior) -> Condition {
     Condition {
         name: "irreducible",
         standing: Standing::Assumed,
-        evidence: evidence.to_string(),
+        evidence: match start {
+            Start::At(stated) if stated.len() == posterior.unknowns.len() => {
+                format!(
+                    "{evidence}; all chains start at one point, so that they agree shows little"
+                )
+            }
+            _ => evidence.to_string(),
+        },
     }
 }

@@ -84,7 +84,7 @@ impl Family for DensityFamily {
             return None;
         }
         let canonical = canonical::of(&declared, &posterior, &sampler, &start);
-        let conditions = conditions::of(&declared, &posterior, &sampler);
+        let conditions = conditions::of(&declared, &posterior, &sampler, &start);
         let every = request.every;
         Some(Arc::new(Density {
             posterior,
