@@ -307,3 +307,42 @@ fn the_catalogue_lists_what_the_tables_hold() {
     let (_folder, output) = with(STUDY, &["catalogue", "methods"]);
     assert!(!text(&output.stdout).contains("Laws"));
 }
+
+/// Points that share their streams are told by their differences, with the error of the pairs: here well under
+/// that of two points taken apart. Points with unlike draws are not paired, and it is said why.
+#[test]
+fn shared_streams_tell_differences() {
+    let sweep = |values: &str| {
+        let axis = format!("[sweep]\nstreams = \"shared\"\n[sweep.axis]\n{values}\n");
+        STUDY
+            .replace(
+                "law = \"normal(mean = 0, sd = 1)\"",
+                "law = \"normal(mean = 3 * c, sd = c)\"",
+            )
+            .replace("[sampler]", "[model.constant]\nc = 1\n[sampler]")
+            + &axis
+    };
+    let points = |values: &str| {
+        let (_folder, output) = with(&sweep(values), &["run", "one.toml", "--json"]);
+        assert_eq!(status(&output), 0, "{}", text(&output.stderr));
+        let json: serde_json::Value = serde_json::from_slice(&output.stdout).unwrap();
+        json["points"].as_array().unwrap().clone()
+    };
+    let alike = points("\"model.constant.c\" = [1, 1.1]");
+    let [one, two] = [0, 1].map(|i| &alike[i]["estimands"][0]);
+    let difference = &alike[1]["differences"]["estimands"][0];
+    assert_eq!(alike[1]["differences"]["from"], alike[0]["key"]);
+    let number = |json: &serde_json::Value, name: &str| json[name].as_f64().unwrap();
+    let plain = number(two, "value") - number(one, "value");
+    assert!((number(difference, "value") - plain).abs() < 1e-12);
+    let apart = number(one, "mcse").hypot(number(two, "mcse"));
+    let paired = number(difference, "mcse");
+    assert!(paired < 0.7 * apart, "{paired} {apart}");
+    assert!((number(difference, "value") - 0.3).abs() < 5.0 * paired);
+    let unlike = points("\"ensemble.draws\" = [1000, 1200]");
+    let reason = unlike[1]["differences"]["reason"].as_str().unwrap();
+    assert!(
+        reason.contains("1,200 draws a chain, the first point 1,000"),
+        "{reason}"
+    );
+}

@@ -4,7 +4,7 @@ use super::status::Status;
 use super::study::grounds_of;
 use crate::canon::{self, Json};
 use crate::engine::{PointEnd, Reviewed, summary};
-use crate::estimates::Summary;
+use crate::estimates::{Paired, Summary};
 use crate::grounds::Grounds;
 use crate::plan::{NUMERICS, Plan};
 use crate::record::{self, Circumstances, Open, RecordFault};
@@ -35,6 +35,7 @@ impl From<RecordFault> for NotFiled {
 pub fn file(
     plan: &Plan,
     ends: &[PointEnd<Reviewed>],
+    paired: Vec<Option<Paired>>,
     open: Open,
     mut circumstances: Circumstances,
 ) -> Result<Filed, NotFiled> {
@@ -49,8 +50,9 @@ pub fn file(
     }
     let points: Vec<(Summary, Grounds)> = ends
         .iter()
-        .filter_map(|end| {
-            let summary = summary(plan, end)?;
+        .zip(paired)
+        .filter_map(|(end, paired)| {
+            let summary = summary(plan, end, paired)?;
             let grounds = grounds_of(plan, end.point, Some(&summary));
             Some((summary, grounds))
         })

@@ -8,6 +8,7 @@ use super::status::Status;
 use super::study::{self, Read};
 use crate::engine::{
     Event, Finished, Halt, Journal, Mark, Orders, PlanJudge, Reader, Sink, Stood, Task, conduct,
+    paired,
 };
 use crate::record::{self, Circumstances, Entry, Folder, JournalFile, Open, RecordFault};
 use std::num::NonZeroUsize;
@@ -90,7 +91,11 @@ fn work(read: &Read, mut open: Open, threads: usize) -> Result<Filed, Status> {
     };
     let ends = conduct(&tasks, &PlanJudge::new(plan), &orders, &mut desk);
     desk.progress.end();
-    let ends = match ends {
+    let ends = ends.and_then(|ends| {
+        let paired = paired(plan, &ends, threads, &signals::STOP)?;
+        Ok((ends, paired))
+    });
+    let (ends, paired) = match ends {
         Ok(ends) => ends,
         Err(halt) => {
             let (status, words) = halted(&halt);
@@ -99,7 +104,7 @@ fn work(read: &Read, mut open: Open, threads: usize) -> Result<Filed, Status> {
             return Err(status);
         }
     };
-    let filed = outcome::file(plan, &ends, open, circumstances);
+    let filed = outcome::file(plan, &ends, paired, open, circumstances);
     filed.map_err(|fault| match fault {
         outcome::NotFiled::NoStart(words) => {
             tell(&words);

@@ -6,7 +6,7 @@ use super::conduct::PointEnd;
 use super::judge::{Judge, Settling, Verdict};
 use crate::canon;
 use crate::course::Quantity;
-use crate::estimates::{self, Estimate, Figure, GoalState, Summary};
+use crate::estimates::{self, Estimate, Figure, GoalState, Paired, Summary};
 use crate::plan::{Plan, Point};
 use rayon::prelude::*;
 use std::sync::atomic::{AtomicBool, Ordering};
@@ -24,11 +24,13 @@ pub struct PlanJudge<'a> {
 }
 
 /// What a review leaves when it is the last.
-#[derive(Debug, Clone, PartialEq)]
+#[derive(Clone)]
 pub struct Reviewed {
     pub figures: Vec<Figure>,
     /// What limits the goal, and what would reach it.
     pub advice: Option<String>,
+    /// The draws looked at.
+    pub(super) columns: Columns,
 }
 
 impl<'a> PlanJudge<'a> {
@@ -68,7 +70,7 @@ impl<'a> PlanJudge<'a> {
 }
 
 /// Quantities whose draws fit in memory together.
-fn side_by_side(columns: &Columns) -> usize {
+pub(super) fn side_by_side(columns: &Columns) -> usize {
     let each = columns.chains() * columns.draws() * 8 * COPIES;
     (MEMORY / each.max(1)).max(1)
 }
@@ -125,7 +127,11 @@ impl Judge for PlanJudge<'_> {
         Ok(Verdict {
             met: verdict.map(|verdict| verdict.met),
             standing: advice.clone().unwrap_or_default(),
-            figures: Reviewed { figures, advice },
+            figures: Reviewed {
+                figures,
+                advice,
+                columns: columns.clone(),
+            },
         })
     }
 }
@@ -191,8 +197,9 @@ fn agreement(draws: Vec<Vec<f64>>) -> Agreement {
     }
 }
 
-/// The summary of a point that ended with figures; `None` for one whose chains found no start.
-pub fn summary(plan: &Plan, end: &PointEnd<Reviewed>) -> Option<Summary> {
+/// The summary of a point that ended with figures, beside the first where they share their streams; `None` for one
+/// whose chains found no start.
+pub fn summary(plan: &Plan, end: &PointEnd<Reviewed>, paired: Option<Paired>) -> Option<Summary> {
     let ended = end.ended.as_ref().ok()?;
     let point = &plan.points[end.point];
     Some(Summary {
@@ -208,6 +215,7 @@ pub fn summary(plan: &Plan, end: &PointEnd<Reviewed>) -> Option<Summary> {
         },
         advice: ended.figures.advice.clone(),
         figures: ended.figures.figures.clone(),
+        paired,
     })
 }
 

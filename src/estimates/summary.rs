@@ -1,6 +1,6 @@
 //! What one point of a study says: its figures, beside how they came about.
 
-use super::Estimate;
+use super::{Difference, Estimate};
 use crate::canon::Json;
 use crate::plan::{EstimandGoal, Give};
 
@@ -54,6 +54,18 @@ pub struct Summary {
     /// One sentence on what limits the goal and what would reach it.
     pub advice: Option<String>,
     pub figures: Vec<Figure>,
+    /// With shared streams: this point beside the first.
+    pub paired: Option<Paired>,
+}
+
+/// A point beside the first one of a sweep whose points share their random numbers.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Paired {
+    /// The key of the first point that has figures.
+    pub first: String,
+    /// One a figure, `None` for a quantity that the first point does not have or whose value was not asked
+    /// for; or why there are none at all.
+    pub differences: Result<Vec<Option<Difference>>, String>,
 }
 
 /// The quantiles that an estimand's figures need, each once, ascending.

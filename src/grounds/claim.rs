@@ -193,6 +193,7 @@ mod tests {
                 goal: None,
                 estimate: e,
             }],
+            paired: None,
         }
     }
 

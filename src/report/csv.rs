@@ -1,11 +1,12 @@
 //! `summary.csv` (RFC 4180): a line a figure and point.
 
 use crate::canon::Json;
-use crate::estimates::Summary;
+use crate::estimates::{Difference, Note, Summary};
 
 /// Columns: the key of the point, a column a swept path, the goal, name and unit, then the figures, then value
-/// and Monte Carlo error of every quantile level that any figure has, then the notes. An empty cell is a
-/// figure that does not exist or was not asked for.
+/// and Monte Carlo error of every quantile level that any figure has, then the notes; where points share their
+/// streams, then the difference from the first point, its error and its notes. An empty cell is a figure that does
+/// not exist or was not asked for.
 pub fn summary_csv(points: &[Summary]) -> String {
     let mut levels: Vec<f64> = points
         .iter()
@@ -42,9 +43,13 @@ pub fn summary_csv(points: &[Summary]) -> String {
         header.push(format!("q{level}_mcse"));
     }
     header.push("notes".into());
+    let paired = points.iter().any(|p| p.paired.is_some());
+    if paired {
+        header.extend(["difference", "difference_mcse", "difference_notes"].map(String::from));
+    }
     line(&mut out, header);
     for p in points {
-        for f in &p.figures {
+        for (index, f) in p.figures.iter().enumerate() {
             let e = &f.estimate;
             let mut cells = vec![p.key.clone()];
             cells.extend(
@@ -73,17 +78,31 @@ pub fn summary_csv(points: &[Summary]) -> String {
                 cells.push(number(q.and_then(|q| q.value)));
                 cells.push(number(q.and_then(|q| q.mcse)));
             }
-            cells.push(
-                e.notes
-                    .iter()
-                    .map(|n| n.to_string())
-                    .collect::<Vec<_>>()
-                    .join("; "),
-            );
+            cells.push(notes(&e.notes));
+            if paired {
+                cells.extend(difference(p, index));
+            }
             line(&mut out, cells);
         }
     }
     out
+}
+
+fn notes(notes: &[Note]) -> String {
+    let texts: Vec<String> = notes.iter().map(Note::to_string).collect();
+    texts.join("; ")
+}
+
+/// A difference from the first point, its error and its notes, or why there is none.
+fn difference(p: &Summary, figure: usize) -> [String; 3] {
+    let nothing = || [String::new(), String::new(), String::new()];
+    match p.paired.as_ref().map(|paired| &paired.differences) {
+        None => nothing(),
+        Some(Err(reason)) => [String::new(), String::new(), reason.clone()],
+        Some(Ok(all)) => all[figure].as_ref().map_or_else(nothing, |d: &Difference| {
+            [number(d.value), number(d.mcse), notes(&d.notes)]
+        }),
+    }
 }
 
 fn number(x: Option<f64>) -> String {

@@ -1,7 +1,7 @@
 //! `summary.json` and `grounds.json`.
 
 use crate::canon::Json;
-use crate::estimates::{Estimate, Figure, Summary};
+use crate::estimates::{Difference, Estimate, Figure, Note, Paired, Summary};
 use crate::grounds::Grounds;
 use crate::plan::Numerics;
 
@@ -35,7 +35,7 @@ pub fn summary_json(
 }
 
 fn point_json(point: &Summary) -> Json {
-    Json::object([
+    let mut fields = vec![
         ("key", Json::text(point.key.clone())),
         ("values", Json::object(point.values.iter().cloned())),
         ("draws_per_chain", Json::Count(point.draws_per_chain)),
@@ -45,7 +45,46 @@ fn point_json(point: &Summary) -> Json {
             "estimands",
             Json::array(point.figures.iter().map(figure_json)),
         ),
+    ];
+    fields.extend(point.paired.as_ref().map(|paired| {
+        let json = paired_json(paired, &point.figures);
+        ("differences", json)
+    }));
+    Json::object(fields)
+}
+
+/// The differences from the first point of a sweep with shared streams; an empty list has its reason.
+fn paired_json(paired: &Paired, figures: &[Figure]) -> Json {
+    let none = Vec::new();
+    let (differences, reason) = match &paired.differences {
+        Ok(differences) => (differences, Json::Null),
+        Err(reason) => (&none, Json::text(reason.clone())),
+    };
+    let both = figures.iter().zip(differences);
+    let estimands = both.filter_map(|(f, d)| Some(difference_json(f, d.as_ref()?)));
+    Json::object([
+        ("from", Json::text(paired.first.clone())),
+        ("estimands", Json::array(estimands)),
+        ("reason", reason),
     ])
+}
+
+fn difference_json(f: &Figure, d: &Difference) -> Json {
+    Json::object([
+        ("name", Json::text(f.name.clone())),
+        ("unit", unit_json(f)),
+        ("value", real(d.value)),
+        ("mcse", real(d.mcse)),
+        ("notes", notes_json(&d.notes)),
+    ])
+}
+
+fn unit_json(f: &Figure) -> Json {
+    f.unit.clone().map_or(Json::Null, Json::text)
+}
+
+fn notes_json(notes: &[Note]) -> Json {
+    Json::array(notes.iter().map(|n| Json::text(n.to_string())))
 }
 
 fn figure_json(f: &Figure) -> Json {
@@ -56,7 +95,7 @@ fn figure_json(f: &Figure) -> Json {
     });
     Json::object([
         ("name", Json::text(f.name.clone())),
-        ("unit", f.unit.clone().map_or(Json::Null, Json::text)),
+        ("unit", unit_json(f)),
         ("value", real(e.value)),
         ("mcse", real(e.mcse)),
         ("sd", real(e.sd)),
@@ -64,10 +103,7 @@ fn figure_json(f: &Figure) -> Json {
         ("r_hat", real(e.r_hat)),
         ("effective_bulk", real(e.effective_bulk)),
         ("effective_tail", real(e.effective_tail)),
-        (
-            "notes",
-            Json::array(e.notes.iter().map(|n| Json::text(n.to_string()))),
-        ),
+        ("notes", notes_json(&e.notes)),
     ])
 }
 

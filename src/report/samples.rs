@@ -2,7 +2,9 @@
 
 use crate::canon::Json;
 use crate::course::{Condition, Standing};
-use crate::estimates::{Estimate, Figure, GoalState, Note, QuantileEstimate, Summary};
+use crate::estimates::{
+    Difference, Estimate, Figure, GoalState, Note, Paired, QuantileEstimate, Summary,
+};
 use crate::grounds::{Grounds, grounds};
 use crate::plan::{Accepted, Give};
 
@@ -91,6 +93,7 @@ pub(super) fn summary() -> Summary {
             figure("b", None, heavy),
             figure("worst_is_third", None, rare),
         ],
+        paired: None,
     }
 }
 
@@ -118,6 +121,32 @@ pub(super) fn sweep() -> Vec<Summary> {
             s
         })
         .collect()
+}
+
+/// The same with shared streams: the second point has its differences, the third stopped elsewhere.
+pub(super) fn paired_sweep() -> Vec<Summary> {
+    let mut points = sweep();
+    let difference = |value, mcse, notes| {
+        Some(Difference {
+            value: Some(value),
+            mcse,
+            notes,
+        })
+    };
+    let found = vec![
+        difference(0.01, Some(0.000011), Vec::new()),
+        difference(0.0, None, vec![Note::Constant { value: 0.0 }]),
+        difference(-3.2, Some(0.4), Vec::new()),
+        None,
+    ];
+    let reason = "it has 3,000 draws a chain, the first point 2,000";
+    for (point, differences) in [(1, Ok(found)), (2, Err(reason.into()))] {
+        points[point].paired = Some(Paired {
+            first: "5f2c0".into(),
+            differences,
+        });
+    }
+    points
 }
 
 pub(super) fn standings(summary: &Summary) -> Grounds {

@@ -1,6 +1,7 @@
 //! Snapshots of what a reader sees.
 
-use super::samples::{standings, summary, sweep};
+use super::samples::{paired_sweep, standings, summary, sweep};
+use super::sweep::differences_text;
 use super::*;
 
 #[test]
@@ -53,6 +54,33 @@ fn a_sweep_shows_the_grounds_of_its_worst_point() {
 }
 
 #[test]
+fn points_that_share_streams_show_their_differences() {
+    let points = paired_sweep();
+    let text = differences_text(&points, 60, WIDTH);
+    assert_eq!(text, DIFFERENCES);
+    assert_eq!(differences_text(&sweep(), 60, WIDTH), "");
+    let numerics = crate::plan::NUMERICS;
+    let json = summary_json(numerics, "abc", None, &points).canonical();
+    let read: serde_json::Value = serde_json::from_str(&json).expect("JSON");
+    assert!(read["points"][0]["differences"].is_null());
+    let differences = &read["points"][1]["differences"];
+    assert_eq!(differences["from"], "5f2c0");
+    let first = &differences["estimands"][0];
+    assert_eq!(
+        (&first["name"], &first["value"]),
+        (&"rate[\"Cawdle\"]".into(), &0.01.into())
+    );
+    let reason = read["points"][2]["differences"]["reason"].as_str();
+    assert!(reason.is_some_and(|r| r.contains("3,000 draws a chain")));
+    let csv = summary_csv(&points);
+    let mut lines = csv.lines();
+    let header = lines.next().unwrap();
+    assert!(header.ends_with("notes,difference,difference_mcse,difference_notes"));
+    assert!(lines.next().unwrap().ends_with(",,,,"), "{csv}");
+    assert!(lines.nth(3).unwrap().ends_with(",,0.01,0.000011,"), "{csv}");
+}
+
+#[test]
 fn files() {
     let s = [summary()];
     let numerics = crate::plan::Numerics {
@@ -75,6 +103,19 @@ fn files() {
     );
 }
 
+const DIFFERENCES: &str = r#"
+difference from the first point (Monte Carlo error of the difference)
+                                                rate["Fen End, the pump
+                                                house by the old sluice
+                                                    on the eastern main
+                                rate["Cawdle"]                  drain"]
+prior_rate  method      goal              1/kh                     1/kh        b  worst_is_third
+1.5         slice       met       0.010000(11)                     0(?)  -3.2(4)               –
+2.5         metropolis  missed               –                        –        –               –
+(?) no error, – no difference; the reasons stand in summary.csv
+The points share their random numbers. These errors are those of chains taken in pairs, in which the
+noise that both have in common cancels, and are not to be had from the errors above.
+"#;
 const ONE_POINT: &str = r#"Failure rates
 Which station fails most often?
 

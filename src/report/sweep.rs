@@ -1,9 +1,9 @@
 //! A sweep as plain text: one line a point, the swept values, then value and Monte Carlo error of each
-//! quantity.
+//! quantity; where points share their streams, then the differences from the first.
 
 use super::layout::{Column, Side, cell, table, wrap};
 use crate::canon::Json;
-use crate::estimates::{GoalState, Summary, count, figure};
+use crate::estimates::{Figure, GoalState, Summary, count, figure};
 use crate::plan::Give;
 
 /// Names are broken at this width when they head a column.
@@ -11,6 +11,57 @@ const HEADING: usize = 24;
 
 /// Tables over the first `rows` points, as many quantities at a time as the page holds.
 pub fn sweep_text(points: &[Summary], rows: usize, page: usize) -> String {
+    let value = |_: &Summary, _: usize, f: &Figure| figure(f.estimate.value, f.estimate.mcse);
+    let mut out = tables(points, rows, page, value);
+    if out.contains("(?)") {
+        out.push_str("(?) no error; the reasons stand in summary.csv\n");
+    }
+    out
+}
+
+/// The differences from the first point, which is left out; nothing where streams are not shared.
+pub fn differences_text(points: &[Summary], rows: usize, page: usize) -> String {
+    let Some((_, others)) = points.split_first() else {
+        return String::new();
+    };
+    if others.iter().all(|p| p.paired.is_none()) {
+        return String::new();
+    }
+    let none = || figure(None, None);
+    let difference = |p: &Summary, index: usize, _: &Figure| match &p.paired {
+        Some(paired) => match &paired.differences {
+            Ok(all) => all[index]
+                .as_ref()
+                .map_or_else(none, |d| figure(d.value, d.mcse)),
+            Err(_) => none(),
+        },
+        None => none(),
+    };
+    let mut out =
+        String::from("\ndifference from the first point (Monte Carlo error of the difference)\n");
+    let body = tables(others, rows, page, difference);
+    out.push_str(&body);
+    if body.contains("(?)") || body.contains(&none()) {
+        let text = "(?) no error, \u{2013} no difference; the reasons stand in summary.csv";
+        out.push_str(&wrap(text, page, 0, 0));
+    }
+    out.push_str(&wrap(
+        "The points share their random numbers. These errors are those of chains taken in pairs, in which the noise that \
+         both have in common cancels, and are not to be had from the errors above.",
+        page,
+        0,
+        0,
+    ));
+    out
+}
+
+/// A column a quantity, its cells from the point, the index of the figure and the figure.
+fn tables(
+    points: &[Summary],
+    rows: usize,
+    page: usize,
+    text: impl Fn(&Summary, usize, &Figure) -> String,
+) -> String {
     let shown = &points[..if rows < points.len() {
         rows
     } else {
@@ -24,8 +75,9 @@ pub fn sweep_text(points: &[Summary], rows: usize, page: usize) -> String {
         column.cells = shown
             .iter()
             .map(|p| {
-                let found = p.figures.iter().find(|f| cell(&f.name) == name);
-                found.map_or(String::new(), |f| figure(f.estimate.value, f.estimate.mcse))
+                let mut figures = p.figures.iter().enumerate();
+                let found = figures.find(|(_, f)| cell(&f.name) == name);
+                found.map_or(String::new(), |(index, f)| text(p, index, f))
             })
             .collect();
         columns.push(column);
@@ -47,9 +99,6 @@ pub fn sweep_text(points: &[Summary], rows: usize, page: usize) -> String {
             out.push('\n');
         }
         out.push_str(&table(&block, page));
-    }
-    if out.contains("(?)") {
-        out.push_str("(?) no error; the reasons stand in summary.csv\n");
     }
     if shown.len() < points.len() {
         out.push_str(&format!(

@@ -3,7 +3,7 @@
 use super::figures::figures_text;
 use super::grounds_text::grounds_text;
 use super::layout::{cell, wrap};
-use super::sweep::{sweep_text, value_text};
+use super::sweep::{differences_text, sweep_text, value_text};
 use crate::estimates::{GoalState, Summary, count};
 use crate::grounds::{Grounds, rank};
 
@@ -36,6 +36,7 @@ pub fn run_text(title: &str, question: &str, points: &[(Summary, Grounds)], page
             let summaries: Vec<Summary> = points.iter().map(|(s, _)| s.clone()).collect();
             out.push_str("\nvalue (Monte Carlo error) at each point\n");
             out.push_str(&sweep_text(&summaries, POINTS, page));
+            out.push_str(&differences_text(&summaries, POINTS, page));
             out.push_str(&shared_grounds(points, page));
         }
     }
