@@ -95,7 +95,7 @@ fn signal(child: &Child, name: &str) {
     assert!(sent.success());
 }
 
-/// The folder of the one plan under `into`.
+/// The folder of the one plan under `into`, finished or not.
 fn folder_of(into: &Path) -> PathBuf {
     let mut found: Vec<PathBuf> = fs::read_dir(into.join("leaning"))
         .expect("results")
@@ -238,6 +238,50 @@ fn signals_end_it_after_the_current_blocks() {
             last.stderr
         );
         assert!(bits(&into) == bits(&undisturbed), "{name}: other bits");
+    }
+}
+
+/// A journal that was damaged while it lay there costs the blocks behind the damage, and that is said; so is the
+/// torn tail after a kill, which is as it should be.
+#[test]
+fn what_is_cut_off_a_journal_is_told() {
+    let folder = tempfile::tempdir().unwrap();
+    study(folder.path(), STUDY);
+    let undisturbed = folder.path().join("undisturbed");
+    assert_eq!(run(folder.path(), &undisturbed, 2).status, Some(0));
+    let into = folder.path().join("damaged");
+    let child = command(folder.path(), &into, 2).spawn().unwrap();
+    wait_for(&into, |journal| journal > 150_000);
+    signal(&child, "-TERM");
+    assert_eq!(wait(child).status, Some(5));
+    let work = folder_of(&into);
+    let whole = fs::read(work.join("journal")).unwrap();
+    let mut flipped = whole.clone();
+    flipped[whole.len() / 2] ^= 1;
+    let torn = &whole[..whole.len() - 7];
+    for (journal, said, unsaid) in [
+        (
+            flipped.as_slice(),
+            "warning: the journal was damaged: the block at byte",
+            "as after a kill",
+        ),
+        (
+            torn,
+            "the last block of the journal is not whole, as after a kill",
+            "damaged",
+        ),
+        (&whole, "going on with a run", "dropped"),
+    ] {
+        let again = folder.path().join("again");
+        let place = again.join("leaning").join(work.file_name().unwrap());
+        fs::create_dir_all(&place).unwrap();
+        fs::write(place.join("journal"), journal).unwrap();
+        let ended = run(folder.path(), &again, 2);
+        assert_eq!(ended.status, Some(0), "{}", ended.stderr);
+        assert!(ended.stderr.contains(said), "{}", ended.stderr);
+        assert!(!ended.stderr.contains(unsaid), "{}", ended.stderr);
+        assert!(bits(&again) == bits(&undisturbed), "other bits");
+        fs::remove_dir_all(&again).unwrap();
     }
 }
 

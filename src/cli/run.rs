@@ -10,7 +10,8 @@ use crate::engine::{
     Event, Finished, Halt, Journal, Mark, Orders, PlanJudge, Reader, Sink, Stood, Task, conduct,
     paired,
 };
-use crate::record::{self, Circumstances, Entry, Folder, JournalFile, Open, RecordFault};
+use crate::estimates::count;
+use crate::record::{self, Circumstances, Cut, Entry, Folder, JournalFile, Open, RecordFault};
 use std::num::NonZeroUsize;
 use std::path::Path;
 use std::sync::Arc;
@@ -125,6 +126,9 @@ fn prepare(
     if let Some(warning) = record::check_room(open.path(), needs, open.journal.length())? {
         tell(&warning);
     }
+    if let Some(cut) = &open.journal.cut {
+        tell(&cut_words(cut));
+    }
     if open.journal.stood > 0 {
         tell(&format!(
             "going on with a run that was interrupted: {} blocks stand",
@@ -135,6 +139,24 @@ fn prepare(
     record::keep_inputs(open, &read.plan.inputs)?;
     open.write("data/plan.json", read.plan.json().pretty().as_bytes())?;
     Circumstances::begin(open, threads)
+}
+
+/// What was cut off the journal: after a kill the rest of its last block, which is as it should be; otherwise the
+/// file was damaged.
+fn cut_words(cut: &Cut) -> String {
+    let bytes = count(cut.bytes);
+    if cut.behind == 0 {
+        return format!(
+            "the last block of the journal is not whole, as after a kill: {bytes} bytes are dropped and drawn again"
+        );
+    }
+    format!(
+        "warning: the journal was damaged: the block at byte {} is not as it was written. It is dropped with the {} \
+         blocks behind it ({bytes} bytes in all), and all of them are drawn again, to the same digits. A failing disk, a \
+         power cut or another program may have done it",
+        count(cut.at),
+        count(cut.behind),
+    )
 }
 
 fn halted(halt: &Halt) -> (Status, String) {

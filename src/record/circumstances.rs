@@ -32,6 +32,7 @@ impl Circumstances {
         };
         let text = |name: &str, value: String| (name.to_owned(), Json::text(value));
         let count = |name: &str, value: u64| (name.to_owned(), Json::Count(value));
+        let cut = open.journal.cut;
         let this = vec![
             text("began", moment::now()),
             text("host", moment::host()),
@@ -41,7 +42,8 @@ impl Circumstances {
             count("process", std::process::id().into()),
             count("threads", threads as u64),
             count("blocks_found", open.journal.stood),
-            count("torn_bytes_cut", open.journal.cut),
+            count("bytes_cut", cut.map_or(0, |cut| cut.bytes)),
+            count("whole_blocks_cut", cut.map_or(0, |cut| cut.behind)),
         ];
         let circumstances = Circumstances { earlier, this };
         circumstances.save(open)?;

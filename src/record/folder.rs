@@ -24,6 +24,9 @@ use std::fs::{self, File};
 use std::io::{self, Write};
 use std::path::{Path, PathBuf};
 
+/// Turns in which a folder may go away under our feet.
+const TRIES: u32 = 10;
+
 /// The place of the results of a plan.
 #[derive(Debug, Clone, PartialEq, Eq)]
 pub struct Folder {
@@ -62,12 +65,27 @@ impl Folder {
 
     /// Goes in: finds the results, or takes the lock and opens the journal.
     pub fn enter(&self) -> Result<Entry, RecordFault> {
-        if self.done.exists() {
-            return Ok(Entry::Done(self.done.clone()));
-        }
-        let inputs = self.open.join("data/inputs");
-        fs::create_dir_all(&inputs).map_err(|fault| RecordFault::place(&self.open, &fault))?;
-        let lock = Lock::take(&self.open.join("lock"))?;
+        let mut tries = 0;
+        let lock = loop {
+            if self.done.exists() {
+                return Ok(Entry::Done(self.done.clone()));
+            }
+            // Another process that ends its run gives the folder its name between these steps; then its results
+            // are found at the next turn.
+            tries += 1;
+            match fs::create_dir_all(self.open.join("data/inputs")) {
+                Err(fault) if fault.kind() == io::ErrorKind::NotFound && tries < TRIES => continue,
+                made => made.map_err(|fault| RecordFault::place(&self.open, &fault))?,
+            }
+            match Lock::take(&self.open.join("lock"))? {
+                Some(lock) => break lock,
+                None if tries < TRIES => {}
+                None => {
+                    let gone = io::Error::from(io::ErrorKind::NotFound);
+                    return Err(RecordFault::disk("lock", &self.open, &gone));
+                }
+            }
+        };
         if self.done.exists() {
             // Another process ended its run between our look and our lock.
             let _ = fs::remove_dir_all(&self.open);
@@ -164,6 +182,36 @@ mod tests {
         assert!(matches!(folder.enter().unwrap(), Entry::Done(path) if path == done));
         let left: Vec<_> = fs::read_dir(done.parent().unwrap()).unwrap().collect();
         assert_eq!(left.len(), 1);
+    }
+
+    /// Processes that begin and end at once: each works, is told who does, or finds the results.
+    #[test]
+    fn all_who_come_at_once_get_an_answer() {
+        let into = tempfile::tempdir().unwrap();
+        let come = |folder: &Folder| match folder.enter() {
+            Ok(Entry::Open(work)) => {
+                work.write("data/plan.json", b"{}").unwrap();
+                (work.finish().unwrap(), 1)
+            }
+            Ok(Entry::Done(path)) => (path, 0),
+            Err(fault) => {
+                let words = fault.to_string();
+                assert!(
+                    words.contains("process ") && words.contains(" on "),
+                    "{words}"
+                );
+                (folder.done.clone(), 0)
+            }
+        };
+        for round in 0..40 {
+            let folder = Folder::of(into.path(), "pumps.toml".as_ref(), &[round; 32]);
+            let worked: u32 = std::thread::scope(|scope| {
+                let ways: Vec<_> = (0..4).map(|_| scope.spawn(|| come(&folder))).collect();
+                ways.into_iter().map(|way| way.join().unwrap().1).sum()
+            });
+            assert_eq!(worked, 1, "round {round}");
+            assert_eq!(read(&folder.done, "data/plan.json").unwrap(), "{}");
+        }
     }
 
     #[test]

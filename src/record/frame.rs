@@ -22,6 +22,9 @@ pub const HEAD: usize = 8 + 4 + 32 + 32;
 /// Bytes of a frame's header.
 pub const HEADER: usize = 200;
 
+/// Begins every header.
+pub const MAGIC: &[u8; 4] = b"blok";
+
 const VERSION: u32 = 1;
 
 /// The head of the journal of a plan.
@@ -79,7 +82,7 @@ impl Header {
     pub fn bytes(&self) -> [u8; HEADER] {
         let mut bytes = [0; HEADER];
         let mut put = |at: usize, field: &[u8]| bytes[at..at + field.len()].copy_from_slice(field);
-        put(0, b"blok");
+        put(0, MAGIC);
         put(4, &self.point.to_le_bytes());
         put(8, &self.chain.to_le_bytes());
         put(
@@ -102,7 +105,7 @@ impl Header {
 
     /// `None` when the bytes are not a whole header of this version.
     pub fn read(bytes: &[u8; HEADER]) -> Option<Header> {
-        if bytes[168..] != trail::plain(&bytes[..168]) || bytes[..4] != *b"blok" {
+        if bytes[168..] != trail::plain(&bytes[..168]) || bytes[..4] != *MAGIC {
             return None;
         }
         let word = |at: usize| u32::from_le_bytes(bytes[at..at + 4].try_into().expect("4 bytes"));

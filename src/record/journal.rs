@@ -3,7 +3,7 @@
 
 use super::fault::RecordFault;
 use super::frame::{self, HEAD, HEADER, Header};
-use super::scan::{Broken, Scan, Shelf, scan};
+use super::scan::{Broken, Cut, Scan, Shelf, cut, scan};
 use super::sync::Syncer;
 use crate::course::State;
 use crate::engine::trail::{self, Digest};
@@ -21,14 +21,14 @@ pub struct JournalFile {
     syncer: Syncer,
     shelf: Shelf,
     end: u64,
-    /// Bytes of a torn tail that were cut off when it was opened.
-    pub cut: u64,
+    /// What was cut off when it was opened.
+    pub cut: Option<Cut>,
     /// Blocks that stood when it was opened.
     pub stood: u64,
 }
 
 impl JournalFile {
-    /// Opens the journal of a plan, or begins it; cuts off a torn tail.
+    /// Opens the journal of a plan, or begins it; cuts off what follows the first block that is not whole.
     pub fn open(path: &Path, plan: &Digest) -> Result<JournalFile, RecordFault> {
         let io = |fault| RecordFault::disk("open", path, &fault);
         let file = OpenOptions::new()
@@ -59,8 +59,8 @@ impl JournalFile {
                 Broken::Order(words) => RecordFault::foreign(path, &words),
             })?
         };
-        let cut = length.saturating_sub(scanned.end);
-        if cut > 0 {
+        let cut = cut(&file, scanned.end, length).map_err(io)?;
+        if cut.is_some() {
             file.set_len(scanned.end).map_err(io)?;
             file.sync_all().map_err(io)?;
         }

@@ -19,4 +19,5 @@ pub use folder::{Entry, Folder, Open, read};
 pub use inputs::keep as keep_inputs;
 pub use journal::JournalFile;
 pub use room::{Needs, check as check_room, needs, size};
+pub use scan::Cut;
 pub use seal::check as check_seal;

@@ -1,6 +1,6 @@
 //! Reading a journal from its head: which blocks stand, and where the torn tail begins.
 
-use super::frame::{HEAD, HEADER, Header};
+use super::frame::{HEAD, HEADER, Header, MAGIC};
 use crate::course::Phase;
 use crate::engine::{Mark, Stood};
 use sha2::{Digest as _, Sha256};
@@ -17,6 +17,16 @@ pub struct Scan {
     pub shelf: Shelf,
     /// Where the last whole frame ends.
     pub end: u64,
+}
+
+/// What was cut off a journal when it was opened.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Cut {
+    /// Where the first frame begins that is not whole.
+    pub at: u64,
+    pub bytes: u64,
+    /// Frames behind it: none after a kill, which leaves a torn tail.
+    pub behind: u64,
 }
 
 /// Why frames could not be read.
@@ -74,6 +84,46 @@ fn frame_at(file: &File, at: u64, length: u64, buffer: &mut [u8]) -> io::Result<
         from += size;
     }
     Ok(Some(header))
+}
+
+/// What is to be cut off from the end of the whole frames on, if anything.
+pub fn cut(file: &File, at: u64, length: u64) -> io::Result<Option<Cut>> {
+    let bytes = length.saturating_sub(at);
+    let cut = |behind| Cut { at, bytes, behind };
+    (bytes > 0)
+        .then(|| behind(file, at, length).map(cut))
+        .transpose()
+}
+
+/// Counts the frames behind the one at an offset, which is not whole, by their headers.
+fn behind(file: &File, broken: u64, length: u64) -> io::Result<u64> {
+    let mut count = 0;
+    let mut at = broken;
+    let mut window = vec![0; 1 << 18];
+    while length.saturating_sub(at) >= HEADER as u64 {
+        let piece = (length - at).min(window.len() as u64) as usize;
+        file.read_exact_at(&mut window[..piece], at)?;
+        let found = window[..piece]
+            .windows(HEADER)
+            .enumerate()
+            .find_map(|(skip, bytes)| {
+                let header = bytes
+                    .starts_with(MAGIC)
+                    .then(|| Header::read(bytes.try_into().ok()?))??;
+                let frame = header.frame()?;
+                let from = at + skip as u64;
+                (frame <= length - from).then_some((from, frame))
+            });
+        match found {
+            Some((from, frame)) => {
+                count += u64::from(from > broken);
+                at = from + frame;
+            }
+            // The last bytes of this window may begin a header.
+            None => at += (piece - HEADER + 1) as u64,
+        }
+    }
+    Ok(count)
 }
 
 fn hash_of(file: &File, mut from: u64, size: u64, buffer: &mut [u8]) -> io::Result<[u8; 32]> {

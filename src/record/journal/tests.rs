@@ -77,6 +77,17 @@ fn whole() -> (tempfile::TempDir, PathBuf, Ends) {
     (folder, path, ends)
 }
 
+/// Frames in whole bytes of a journal.
+fn whole_frames(mut bytes: &[u8]) -> u64 {
+    let mut count = 0;
+    while let Some(header) = bytes.first_chunk::<HEADER>() {
+        let frame = Header::read(header).unwrap().frame().unwrap();
+        bytes = &bytes[frame as usize..];
+        count += 1;
+    }
+    count
+}
+
 #[test]
 fn a_journal_cut_anywhere_goes_on_to_the_same_bits() {
     let (_folder, path, ends) = whole();
@@ -86,6 +97,8 @@ fn a_journal_cut_anywhere_goes_on_to_the_same_bits() {
     let coarse = (0..=bytes.len()).step_by(bytes.len() / 97);
     for (turn, cut) in fine.chain(coarse).enumerate() {
         std::fs::write(&path, &bytes[..cut]).unwrap();
+        let torn = JournalFile::open(&path, &[7; 32]).unwrap().cut;
+        assert_eq!(torn.map_or(0, |torn| torn.behind), 0, "cut at {cut}");
         let again = run(&path, 1 + turn % 3, 1 + turn % 4);
         assert_eq!(again.as_ref(), Ok(&ends), "cut at {cut} of {}", bytes.len());
         let length = std::fs::metadata(&path).unwrap().len();
@@ -102,7 +115,12 @@ fn a_spoilt_byte_is_found_and_what_follows_is_computed_again() {
         spoilt[at] ^= 0x10;
         std::fs::write(&path, &spoilt).unwrap();
         let journal = JournalFile::open(&path, &[7; 32]).unwrap();
-        assert!(journal.cut > 0, "byte {at} went unseen");
+        let cut = journal
+            .cut
+            .unwrap_or_else(|| panic!("byte {at} went unseen"));
+        assert!(cut.at <= at as u64 && cut.at + cut.bytes == bytes.len() as u64);
+        let frames = whole_frames(&bytes[cut.at as usize..]);
+        assert_eq!(cut.behind, frames - 1, "byte {at}");
         drop(journal);
         assert_eq!(run(&path, 2, 3).as_ref(), Ok(&ends), "byte {at}");
     }
