@@ -12,13 +12,18 @@ const BEFORE_FIRST_REVIEW: u64 = 8;
 /// A saved state may be this part of the bytes of the draws beside it.
 const STATE_PART: f64 = 1.0 / 16.0;
 
+/// Bytes of the draws in a block of one chain, at most: as many chains as run in lockstep, and blocks on their way to
+/// the journal beside them, are in memory at a time.
+const MOST_BYTES: u64 = 32 << 20;
+
 /// Draws in a block, for a draw of `cost` operations and `quantities` recorded values, a saved state of
 /// `state_size` bytes, and a first review after `draws` draws.
 ///
 /// The tenth of a second decides, within 100 to 102,400 draws; then at least 8 blocks up to the first
 /// review, where blocks of 100 draws allow it; then long enough that states take little room beside draws.
 /// It is 100 times a power of two, so that small changes of a study leave its blocks as they are, but never
-/// more than the draws up to the first review.
+/// more than the draws up to the first review, nor more than 32 MB of draws, down to a power of two under 100 where
+/// very many quantities are recorded.
 pub fn block_length(cost: f64, quantities: usize, state_size: usize, draws: u64) -> u64 {
     let by_cost = OPERATIONS / if cost > 1.0 { cost } else { 1.0 };
     let mut length = whole(by_cost).clamp(SHORTEST, LONGEST);
@@ -28,7 +33,15 @@ pub fn block_length(cost: f64, quantities: usize, state_size: usize, draws: u64)
     let by_state = whole(state_size as f64 / (draw_bytes * STATE_PART)).min(LONGEST);
     length = length.max(by_state);
     let doublings = (length / SHORTEST).ilog2();
-    (SHORTEST << doublings).min(draws).max(1)
+    let length = (SHORTEST << doublings).min(draws).max(1);
+    let by_bytes = (MOST_BYTES / (8 * quantities.max(1) as u64)).max(1);
+    if length <= by_bytes {
+        length
+    } else if by_bytes < SHORTEST {
+        1 << by_bytes.ilog2()
+    } else {
+        SHORTEST << (by_bytes / SHORTEST).ilog2()
+    }
 }
 
 fn whole(x: f64) -> u64 {
@@ -81,6 +94,22 @@ mod tests {
         assert_eq!(block_length(f64::INFINITY, 0, usize::MAX, 1), 1);
     }
 
+    #[test]
+    fn blocks_of_very_many_quantities_are_bounded_in_bytes() {
+        for (quantities, state, length) in [
+            (40_000, 0, 100),
+            (100_000, 0, 32),
+            (1_000_000, 0, 4),
+            (10_000_000, 0, 1),
+            // Cheap draws, and a large state: the bound holds against both.
+            (100, 0, 25_600),
+            (10_000, 1 << 40, 400),
+        ] {
+            let found = block_length(100.0, quantities, state, 10_000_000);
+            assert_eq!(found, length, "{quantities} {state}");
+        }
+    }
+
     fn ensemble(draws: u64) -> Ensemble {
         Ensemble {
             chains: 1,
@@ -113,13 +142,14 @@ mod tests {
         #[test]
         fn any_plan_has_sane_blocks_and_reviews(
             cost in prop::num::f64::ANY,
-            quantities in 0_usize..10_000,
+            quantities in 0_usize..10_000_000,
             state in 0_usize..1_000_000_000,
             draws in 1_u64..1 << 53,
             more in 0_u64..1 << 53,
         ) {
             let block = block_length(cost, quantities, state, draws);
             prop_assert!((1..=LONGEST).contains(&block) && block <= draws);
+            prop_assert!(block == 1 || block * 8 * quantities as u64 <= MOST_BYTES);
             let reviews = reviews(&ensemble(draws), Some(&goal(draws.saturating_add(more))), block);
             prop_assert_eq!(reviews[0], draws);
             prop_assert_eq!(reviews[reviews.len() - 1], draws.saturating_add(more));

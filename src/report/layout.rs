@@ -71,7 +71,8 @@ pub(super) fn table(columns: &[Column], page: usize) -> String {
         ),
         None => return String::new(),
     };
-    let others: usize = rest.iter().map(|c| c.wide() + GAP).sum();
+    let rest: Vec<(&Column, usize)> = rest.into_iter().map(|c| (c, c.wide())).collect();
+    let others: usize = rest.iter().map(|(_, wide)| wide + GAP).sum();
     let room = page.saturating_sub(others).max(12);
     // As wide as the longest name that fits.
     let fits = |c: &&String| width(c) <= room;
@@ -111,13 +112,13 @@ fn push(
     out: &mut String,
     name: &str,
     names: usize,
-    rest: &[&Column],
+    rest: &[(&Column, usize)],
     of: impl Fn(&Column) -> String,
 ) {
     let mut line = pad(name, names, Side::Left);
-    for column in rest {
+    for (column, wide) in rest {
         line.push_str(&" ".repeat(GAP));
-        line.push_str(&pad(&of(column), column.wide(), column.side));
+        line.push_str(&pad(&of(column), *wide, column.side));
     }
     out.push_str(line.trim_end());
     out.push('\n');

@@ -2,7 +2,7 @@
 
 use crate::canon::Json;
 use crate::course::{Family, Request, StartSpec};
-use crate::place::{Faults, Text};
+use crate::place::{Fault, Faults, Text};
 use crate::plan::{Data, Input, Point, Prediction, block_length};
 use crate::reading::{self, Content, Section, Table, Tree, Value};
 use crate::study::estimand::{self, identifier, printed};
@@ -11,6 +11,9 @@ use crate::study::{ensemble, goal};
 use std::collections::BTreeMap;
 use std::path::Path;
 use std::sync::Arc;
+
+/// Quantities that a point can record: their figures, with names and notes, are held in memory together.
+const MOST_QUANTITIES: usize = 100_000;
 
 /// What the points of a study have in common while they are resolved.
 pub(super) struct Surroundings<'a> {
@@ -130,6 +133,22 @@ pub(super) fn resolve_point(
         every: ensemble.every,
     };
     let resolved = family.resolve(&request, faults).filter(|_| sound)?;
+    let recorded = resolved.quantities().len();
+    if recorded > MOST_QUANTITIES {
+        let place = root.key_place("estimand").or(root.key_place("model"));
+        faults.push(
+            Fault::at(
+                place.expect("the study has a model"),
+                format!("{recorded} quantities would be recorded at every draw; at most {MOST_QUANTITIES} can be"),
+            )
+            .label("these, with an element of a vector a quantity each")
+            .help(
+                "ask in [[estimand]] for what is wanted of them: an element, as of = \"y[3]\", or a function, as \
+                 of = \"mean(y)\"",
+            ),
+        );
+        return None;
+    }
     if specs.is_empty() {
         estimands = estimand::of_quantities(resolved.quantities());
     }
