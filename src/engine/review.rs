@@ -109,14 +109,17 @@ impl Judge for PlanJudge<'_> {
             .zip(estimates)
             .map(|(quantity, estimate)| {
                 let estimand = &point.estimands[quantity.estimand];
-                Figure {
+                let mut figure = Figure {
                     name: quantity.name.clone(),
                     unit: quantity.unit.clone(),
                     condition: quantity.condition,
                     give: estimand.give.clone(),
                     goal: estimand.goal,
                     estimate,
-                }
+                };
+                let unjudged = estimates::unjudged(&figure);
+                figure.estimate.notes.extend(unjudged);
+                figure
             })
             .collect();
         let verdict = point
@@ -162,8 +165,9 @@ fn settling(names: &[&str], all: &[Agreement]) -> Settling {
     }
     let mut words = match (without, worst) {
         (Some((name, why)), _) => format!("no R-hat of {name}, {why}"),
-        (None, Some((name, r_hat))) if r_hat > 1000.0 => format!("largest R-hat >1000 ({name})"),
-        (None, Some((name, r_hat))) => format!("largest R-hat {r_hat:.3} ({name})"),
+        (None, Some((name, r_hat))) => {
+            format!("largest R-hat {} ({name})", estimates::r_hat_text(r_hat))
+        }
         (None, None) => "no quantity varies".into(),
     };
     match constant {
@@ -239,7 +243,7 @@ mod tests {
         let (settled, words) = told(&[Agreement::RHat(1.0), Agreement::RHat(1.2)]);
         assert_eq!((settled, &*words), (false, "largest R-hat 1.200 (b)"));
         let (settled, words) = told(&[Agreement::RHat(1.883e15)]);
-        assert_eq!((settled, &*words), (false, "largest R-hat >1000 (a)"));
+        assert_eq!((settled, &*words), (false, "largest R-hat > 100 (a)"));
         let constant = || agreement(vec![vec![2.0; 4]; 2]);
         let (settled, words) = told(&[constant(), constant()]);
         let expected = "no quantity varies, 2 constant quantities count as settled";

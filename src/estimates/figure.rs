@@ -205,6 +205,15 @@ fn plain(value: f64) -> String {
     }
 }
 
+/// R-hat with three decimals; how far beyond 100 it lies tells nothing more.
+pub fn r_hat_text(r_hat: f64) -> String {
+    if r_hat > 100.0 {
+        "> 100".into()
+    } else {
+        format!("{r_hat:.3}")
+    }
+}
+
 /// Three significant digits.
 pub fn three_digits(value: f64) -> String {
     if value == 0.0 {
@@ -287,6 +296,14 @@ mod tests {
         assert_eq!(place_for(0.097), Some(-3));
         assert_eq!(place_for(0.14), Some(-3));
         assert_eq!(place_for(0.0), None);
+    }
+
+    #[test]
+    fn a_huge_r_hat_is_not_spelt_out() {
+        assert_eq!(r_hat_text(1.0004), "1.000");
+        assert_eq!(r_hat_text(99.9994), "99.999");
+        assert_eq!(r_hat_text(1.883e15), "> 100");
+        assert_eq!(r_hat_text(f64::INFINITY), "> 100");
     }
 
     #[test]

@@ -56,6 +56,12 @@ impl Verdict {
 /// (hardly) ever took one value are judged by the effective size of the run.
 pub fn review(figures: &[Figure], goal: &Goal) -> Verdict {
     let mut shortfalls = Vec::new();
+    // While chains disagree nothing tells the effective size of the run: what waits for it is told last.
+    let disagree = figures.iter().any(|f| f.estimate.chains_disagree());
+    let waits = |f: &Figure| {
+        let e = &f.estimate;
+        disagree && e.effective_run.is_none() && e.notes.iter().any(Note::is_seldom)
+    };
     for (index, figure) in figures.iter().enumerate() {
         for (what, factor) in lacks(figure, goal) {
             let now = figure.estimate.draws as f64;
@@ -68,12 +74,33 @@ pub fn review(figures: &[Figure], goal: &Goal) -> Verdict {
         }
     }
     // Without a remedy first, then by the draws wanted; a stable sort keeps the order of the figures.
-    shortfalls.sort_by_key(|s| std::cmp::Reverse(s.draws.unwrap_or(u64::MAX)));
+    shortfalls.sort_by_key(|s| {
+        let last = waits(&figures[s.figure]);
+        (last, std::cmp::Reverse(s.draws.unwrap_or(u64::MAX)))
+    });
     Verdict {
         met: shortfalls.is_empty(),
         at_most: goal.at_most,
         shortfalls,
     }
+}
+
+/// What a goal of digits asks of a figure and cannot judge, for want of an error: a quantile among equal draws, a
+/// standard uncertainty of heavy tails.
+pub fn unjudged(figure: &Figure) -> Option<Note> {
+    let e = &figure.estimate;
+    let digits = matches!(figure.goal, Some(EstimandGoal::Digits(_)));
+    // Without any error the goal is missed, and it is said why.
+    if !digits || e.mcse.is_none() || e.condition {
+        return None;
+    }
+    let mut figures = Vec::new();
+    if e.sd_mcse.is_none() && figure.give.contains(&Give::Uncertainty) {
+        figures.push("standard uncertainty".to_owned());
+    }
+    let without = e.quantiles.iter().filter(|q| q.mcse.is_none());
+    figures.extend(without.map(|q| format!("{} % quantile", short(q.level * 100.0))));
+    (!figures.is_empty()).then_some(Note::Unjudged { figures })
 }
 
 /// What a figure lacks, each with the factor on its draws that would mend it.
@@ -294,8 +321,8 @@ fn whole(x: f64) -> String {
 }
 
 fn decimals(r_hat: f64) -> String {
-    if r_hat > 1000.0 {
-        return ">1000".into();
+    if r_hat > 100.0 {
+        return "> 100".into();
     }
     let text = format!("{r_hat:.4}");
     text.trim_end_matches('0').trim_end_matches('.').into()
@@ -304,6 +331,7 @@ fn decimals(r_hat: f64) -> String {
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::estimates::QuantileEstimate;
 
     fn figure(e: Estimate) -> Figure {
         Figure {
@@ -450,6 +478,32 @@ mod tests {
         assert!(with(EstimandGoal::Digits(1)).met);
         let two = with(EstimandGoal::Digits(2));
         assert_eq!(two.shortfalls[0].what, "twice the error 0.02 of 0.005");
+    }
+
+    #[test]
+    fn digits_that_cannot_be_judged_are_told() {
+        let mut f = figure(good());
+        f.goal = Some(EstimandGoal::Digits(1));
+        let quantile = |level, mcse| QuantileEstimate {
+            level,
+            value: Some(15.0),
+            mcse,
+        };
+        f.estimate.quantiles = vec![quantile(0.025, Some(0.01)), quantile(0.5, None)];
+        assert!(review(&[f.clone()], &goal()).met);
+        let words = unjudged(&f).unwrap().to_string();
+        assert_eq!(
+            words,
+            "the goal does not bind the 50 % quantile, which has no error"
+        );
+        f.estimate.sd_mcse = None;
+        let words = unjudged(&f).unwrap().to_string();
+        assert!(
+            words.contains("the standard uncertainty and 50 % quantile, which have no"),
+            "{words}"
+        );
+        f.goal = Some(EstimandGoal::Absolute(1.0));
+        assert_eq!(unjudged(&f), None);
     }
 
     #[test]

@@ -70,6 +70,10 @@ pub enum Note {
     NotMixed {
         r_hat: f64,
     },
+    /// A goal of digits asks for figures that have no error, and so does not bind them.
+    Unjudged {
+        figures: Vec<String>,
+    },
     /// Neighbouring order statistics tie, so that these quantiles have no error of this kind.
     Ties {
         levels: Vec<f64>,
@@ -277,6 +281,12 @@ impl fmt::Display for Note {
                 "R-hat {}: the chains do not agree yet, and the errors may be too small",
                 short(*r_hat)
             ),
+            Note::Unjudged { figures } => write!(
+                f,
+                "the goal does not bind the {}, which {} no error",
+                listed(figures),
+                if figures.len() == 1 { "has" } else { "have" }
+            ),
             Note::Ties { levels } => {
                 let names: Vec<String> = levels
                     .iter()
@@ -299,10 +309,10 @@ impl fmt::Display for Note {
 
 /// R-hat in three digits, final zeros too.
 fn three(r_hat: f64) -> String {
-    if r_hat < 100.0 {
-        format!("{r_hat:.2}")
+    if r_hat > 100.0 {
+        "> 100".into()
     } else {
-        short(r_hat)
+        format!("{r_hat:.2}")
     }
 }
 

@@ -29,8 +29,10 @@ pub fn exact_limits(share: f64, effective: f64) -> (f64, f64) {
 
 /// Gives the rare conditions among the estimates of a point their limits. A condition that was seen seldom
 /// or never cannot tell the effective size of its own draws, so the least one of the point's other
-/// quantities stands for the run (bulk or tail, conditions only where there is nothing else).
+/// quantities stands for the run (bulk or tail, conditions only where there is nothing else). Where chains disagree
+/// about any quantity, nothing tells the effective size of the run.
 pub fn settle(estimates: &mut [Estimate]) {
+    let disagree = estimates.iter().any(Estimate::chains_disagree);
     let least = |conditions: bool| {
         let mut least: Option<f64> = None;
         for e in estimates.iter().filter(|e| e.condition == conditions) {
@@ -51,6 +53,7 @@ pub fn settle(estimates: &mut [Estimate]) {
                 (Some(own), Some(run)) if run > own => Some(own),
                 (own, run) => run.or(own),
             };
+            let size = size.filter(|_| !disagree);
             let size = size.map(|s| if s < total { s } else { total });
             e.effective_run = size;
             if let Note::Rare {
@@ -70,6 +73,38 @@ pub fn settle(estimates: &mut [Estimate]) {
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    /// A quantity about which chains disagree has an effective size that means nothing: it stands for no run, and
+    /// neither does that of another.
+    #[test]
+    fn chains_that_disagree_tell_no_size_of_the_run() {
+        let never = Estimate {
+            condition: true,
+            chains: 4,
+            draws: 1000,
+            value: Some(0.0),
+            notes: vec![Note::Rare {
+                seen: 0,
+                of: 4000,
+                effective: None,
+                limits: None,
+            }],
+            ..Estimate::default()
+        };
+        let sized = Estimate {
+            effective_bulk: Some(500.0),
+            ..Estimate::default()
+        };
+        let mut apart = sized.clone();
+        apart.notes.push(Note::Disagree { r_hat: 1.7 });
+        let mut well = [never.clone(), sized.clone()];
+        settle(&mut well);
+        assert_eq!(well[0].effective_run, Some(500.0));
+        assert!(well[0].limits.is_some());
+        let mut badly = [never, sized, apart];
+        settle(&mut badly);
+        assert_eq!((badly[0].effective_run, badly[0].limits), (None, None));
+    }
 
     #[test]
     fn limits_of_few_and_none() {

@@ -2,7 +2,7 @@
 //! seen.
 
 use crate::course::{Condition, Standing};
-use crate::estimates::{Figure, Note, Summary};
+use crate::estimates::{Figure, Note, Summary, r_hat_text};
 
 /// R-hat up to this does not speak against anything.
 const MIXED: f64 = 1.05;
@@ -83,9 +83,11 @@ fn reach(summary: &Summary) -> Option<(Standing, String)> {
     Some((
         standing,
         format!(
-            "{} chains, largest R-hat {r_hat:.3} ({}); a region that no chain visited \
+            "{} chains, largest R-hat {} ({}); a region that no chain visited \
              would not show",
-            summary.chains, figure.name
+            summary.chains,
+            r_hat_text(r_hat),
+            figure.name
         ),
     ))
 }
@@ -108,7 +110,8 @@ fn start(summary: &Summary) -> Option<(Standing, String)> {
     Some((
         standing,
         format!(
-            "largest R-hat {r_hat:.3} ({}); what {what} have in common, a wrong region too, would not show",
+            "largest R-hat {} ({}); what {what} have in common, a wrong region too, would not show",
+            r_hat_text(r_hat),
             figure.name
         ),
     ))

@@ -2,7 +2,10 @@
 //! errors, then the notes.
 
 use super::layout::{Column, Side, cell, table, wrap};
-use crate::estimates::{Estimate, Figure, Summary, ends, figure, place_for, rounded, three_digits};
+use crate::estimates::{
+    Estimate, Figure, Summary, ends, figure, place_for, r_hat_text, rounded, three_digits,
+};
+use crate::maths::absolute;
 use crate::plan::Give;
 
 const DASH: &str = "\u{2013}";
@@ -53,7 +56,7 @@ fn main_table(summary: &Summary, notes: &Notes, page: usize) -> String {
                 asked(Give::Uncertainty, e.sd.map_or(DASH.into(), three_digits))
             },
             intervals(f, interval.is_none()),
-            e.r_hat.map_or(DASH.into(), r_hat),
+            e.r_hat.map_or(DASH.into(), r_hat_text),
             size(e.effective_bulk),
             size(e.effective_tail),
             notes.numbers(index),
@@ -103,6 +106,13 @@ fn interval(e: &Estimate, part: f64) -> Option<String> {
     };
     let [low, high] = ends(part);
     let (low, high) = (at(low)?, at(high)?);
+    // Of a quantity that takes whole values.
+    if [low, high]
+        .iter()
+        .all(|x| x.fract() == 0.0 && absolute(*x) < 1e9)
+    {
+        return Some(format!("{low:.0} to {high:.0}"));
+    }
     Some(match place_for(high - low) {
         Some(place) => format!("{} to {}", rounded(low, place), rounded(high, place)),
         None => format!("{} to {}", three_digits(low), three_digits(high)),
@@ -163,14 +173,6 @@ fn level_name(level: f64) -> String {
 fn percent(part: f64) -> String {
     let text = format!("{:.10}", part * 100.0);
     text.trim_end_matches('0').trim_end_matches('.').into()
-}
-
-pub(super) fn r_hat(x: f64) -> String {
-    if x < 100.0 {
-        format!("{x:.3}")
-    } else {
-        three_digits(x)
-    }
 }
 
 /// An effective size, whole, with commas.

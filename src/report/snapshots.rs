@@ -51,6 +51,8 @@ fn a_sweep_shows_the_grounds_of_its_worst_point() {
     let heading = "Grounds (of the worst point, model.constant.prior_rate = 1.5, sampler.method = slice; at 2 others";
     assert!(flat.contains(heading), "{got}");
     assert!(flat.contains("The error bar holds: failed"), "{got}");
+    let listed = "Conditions that have failed model.constant.prior_rate = 1.5, sampler.method = slice: finite mass (accepted) These";
+    assert!(flat.contains(listed), "{got}");
 }
 
 #[test]
@@ -78,6 +80,41 @@ fn points_that_share_streams_show_their_differences() {
     assert!(header.ends_with("notes,difference,difference_mcse,difference_notes"));
     assert!(lines.next().unwrap().ends_with(",,,,"), "{csv}");
     assert!(lines.nth(3).unwrap().ends_with(",,0.01,0.000011,"), "{csv}");
+}
+
+/// That the error bar is not known to hold is usual, and said to be, unless something speaks against it.
+#[test]
+fn what_is_usual_is_said_to_be() {
+    let mut s = summary();
+    let heavy = grounds_text(&standings(&s), WIDTH);
+    assert!(!heavy.contains("This is usual"), "{heavy}");
+    s.figures[2].estimate.tail_index = Some(0.3);
+    let light = grounds_text(&standings(&s), WIDTH);
+    let flat = light.split_whitespace().collect::<Vec<_>>().join(" ");
+    assert!(
+        flat.contains("The error bar holds: not known This is usual, and no sign"),
+        "{light}"
+    );
+    s.figures[0].estimate.r_hat = Some(1.09);
+    let unmixed = grounds_text(&standings(&s), WIDTH);
+    assert!(!unmixed.contains("This is usual"), "{unmixed}");
+}
+
+/// Quantiles of a quantity that takes whole values are whole numbers.
+#[test]
+fn whole_numbers_have_no_decimals() {
+    let mut s = summary();
+    let (figure, mut ends) = (&mut s.figures[0], [1958.0, 1962.0].into_iter());
+    for q in figure
+        .estimate
+        .quantiles
+        .iter_mut()
+        .filter(|q| q.level != 0.5)
+    {
+        q.value = ends.next();
+    }
+    let text = figures_text(&s, WIDTH);
+    assert!(text.contains(" 1958 to 1962 "), "{text}");
 }
 
 #[test]

@@ -4,6 +4,7 @@ use super::figures::figures_text;
 use super::grounds_text::grounds_text;
 use super::layout::{cell, wrap};
 use super::sweep::{differences_text, sweep_text, value_text};
+use crate::course::Condition;
 use crate::estimates::{GoalState, Summary, count};
 use crate::grounds::{Grounds, rank};
 
@@ -38,6 +39,7 @@ pub fn run_text(title: &str, question: &str, points: &[(Summary, Grounds)], page
             out.push_str(&sweep_text(&summaries, POINTS, page));
             out.push_str(&differences_text(&summaries, POINTS, page));
             out.push_str(&shared_grounds(points, page));
+            out.push_str(&failed_conditions(points, page));
         }
     }
     out.push('\n');
@@ -88,16 +90,50 @@ fn shared_grounds(points: &[(Summary, Grounds)], page: usize) -> String {
     let heading = if other == 0 {
         "\nGrounds (of the first point; the claims stand alike at all points)\n".to_string()
     } else {
-        let values = summary.values.iter();
-        let values = values.map(|(path, value)| format!("{} = {}", cell(path), value_text(value)));
         let text = format!(
             "Grounds (of the worst point, {}; at {} others a claim stands differently, see grounds.json)",
-            values.collect::<Vec<_>>().join(", "),
+            values(summary),
             count(other as u64)
         );
         format!("\n{}", wrap(&text, page, 0, 2))
     };
     heading + &grounds_text(grounds, page)
+}
+
+/// Each point at which conditions have failed, with their names.
+fn failed_conditions(points: &[(Summary, Grounds)], page: usize) -> String {
+    let failed = |g: &Grounds| {
+        let name = |c: &Condition| {
+            let accepted = if g.accepts(c.name) { " (accepted)" } else { "" };
+            format!("{}{accepted}", c.name)
+        };
+        g.failed().into_iter().map(name).collect::<Vec<_>>()
+    };
+    let found: Vec<(&Summary, Vec<String>)> = points
+        .iter()
+        .map(|(summary, grounds)| (summary, failed(grounds)))
+        .filter(|(_, names)| !names.is_empty())
+        .collect();
+    if found.is_empty() {
+        return String::new();
+    }
+    let mut out = String::from("\nConditions that have failed\n");
+    for (summary, names) in found.iter().take(POINTS) {
+        let line = format!("{}: {}", values(summary), names.join(", "));
+        out.push_str(&wrap(&line, page, 2, 4));
+    }
+    if found.len() > POINTS {
+        let more = count((found.len() - POINTS) as u64);
+        out.push_str(&format!("  ... and at {more} more points\n"));
+    }
+    out
+}
+
+/// The swept values of a point.
+fn values(summary: &Summary) -> String {
+    let values = summary.values.iter();
+    let values = values.map(|(path, value)| format!("{} = {}", cell(path), value_text(value)));
+    values.collect::<Vec<_>>().join(", ")
 }
 
 /// Orders points from the strongest to the weakest: failed conditions of needed claims first, then the standings

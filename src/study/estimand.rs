@@ -47,7 +47,19 @@ fn one(section: &Section, faults: &mut Faults) -> Option<(EstimandSpec, Estimand
     let of = section.text("of", faults);
     let unit = section.text("unit", faults);
     let give = match section.list("give", faults) {
-        Some(list) => give(&list, faults),
+        Some(list) => {
+            if let (true, Some(place)) = (list.is_empty(), section.key_place("give")) {
+                faults.push(
+                    Fault::at(place, "`give` asks for no figure")
+                        .label("an empty list")
+                        .help(
+                            "name some of \"value\", \"uncertainty\", \"median\", \"interval\"; leave `give` out for all of \
+                             them, or leave the estimand out",
+                        ),
+                );
+            }
+            give(&list, faults)
+        }
         None => GIVE.to_vec(),
     };
     let goal = section
