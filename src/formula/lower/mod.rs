@@ -280,13 +280,22 @@ impl Lowering<'_> {
                 Some(self.number(value))
             }
             Cells::Numbers { missing, .. } => {
+                let empty = match missing.len() {
+                    1 => "an empty cell".to_owned(),
+                    count => format!("{count} empty cells"),
+                };
                 self.fault(
                     Fault::at(
                         place.clone(),
-                        format!("column `{column}` of table `{}` has {} empty cells", table.name, missing.len()),
+                        format!("column `{column}` of table `{}` has {empty}", table.name),
                     )
                     .label("cells are missing")
-                    .help("cells that are unknown have a value only where the column is observed under a law"),
+                    .help(format!(
+                        "cells that are unknown need a law for their column, with unknowns of its own or without: \
+                         [model.observed] {column} = {{ of = \"{}.{column}\", law = \"normal(mean = …, sd = …)\" }}; \
+                         or leave the rows out: [data.{}] missing = \"drop rows\"",
+                        table.name, table.name
+                    )),
                 );
                 None
             }
