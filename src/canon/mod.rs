@@ -6,7 +6,7 @@ mod write;
 
 use std::collections::BTreeMap;
 
-pub use digest::{hex, sha256_hex};
+pub use digest::{hex, sha256_hex, tagged, unhex};
 
 /// A JSON value of the canonical form.
 #[derive(Debug, Clone, PartialEq)]

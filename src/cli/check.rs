@@ -7,7 +7,7 @@ use crate::canon::{self, Json};
 use crate::engine::Task;
 use crate::plan::{BurnIn, Estimand, EstimandGoal, Goal, Plan, Point};
 use crate::record;
-use crate::report;
+use crate::report::{self, grounds_of};
 use std::path::Path;
 use std::time::Duration;
 
@@ -61,7 +61,7 @@ fn words(plan: &Plan) -> String {
     }
     text.push_str("\nGrounds before any draw\n");
     text.push_str(&report::grounds_text(
-        &study::grounds_of(plan, 0, None),
+        &grounds_of(plan, 0, None),
         report::WIDTH,
     ));
     text

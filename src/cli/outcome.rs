@@ -1,16 +1,14 @@
 //! From the ends of all points to the files of a finished run, and the exit status that they ask for.
 
 use super::status::Status;
-use super::study::grounds_of;
 use crate::canon::{self, Json};
-use crate::engine::{PointEnd, Reviewed, summary};
-use crate::estimates::{Paired, Summary};
-use crate::grounds::Grounds;
-use crate::plan::{NUMERICS, Plan};
-use crate::record::{self, Circumstances, Open, RecordFault};
-use crate::report;
+use crate::engine::{PointEnd, Reviewed};
+use crate::estimates::Paired;
+use crate::plan::Plan;
+use crate::record::{self, Circumstances, Open, RecordFault, Sealing};
+use crate::report::Outcome;
 use std::collections::BTreeMap;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 
 /// A finished folder.
 pub struct Filed {
@@ -31,7 +29,7 @@ impl From<RecordFault> for NotFiled {
     }
 }
 
-/// Writes summaries, grounds and failed points, and gives the folder its name.
+/// Seals the record of a run that has ended.
 pub fn file(
     plan: &Plan,
     ends: &[PointEnd<Reviewed>],
@@ -39,49 +37,26 @@ pub fn file(
     open: Open,
     mut circumstances: Circumstances,
 ) -> Result<Filed, NotFiled> {
-    let failed: Vec<(usize, &str)> = ends
-        .iter()
-        .filter_map(|end| Some((end.point, end.ended.as_ref().err()?.as_str())))
-        .collect();
-    if failed.len() == ends.len() {
-        let words = failed.first().map_or("no point to run", |(_, words)| words);
+    let outcome = Outcome::of(plan, ends, paired);
+    if outcome.points.is_empty() {
+        let words = outcome.failed.first();
+        let words = words.map_or("no point to run", |(_, words)| words);
         let _ = circumstances.end(&open, words);
         return Err(NotFiled::NoStart(words.to_owned()));
     }
-    let points: Vec<(Summary, Grounds)> = ends
-        .iter()
-        .zip(paired)
-        .filter_map(|(end, paired)| {
-            let summary = summary(plan, end, paired)?;
-            let grounds = grounds_of(plan, end.point, Some(&summary));
-            Some((summary, grounds))
-        })
-        .collect();
-    let summaries: Vec<Summary> = points.iter().map(|(summary, _)| summary.clone()).collect();
-    let digest = canon::hex(&plan.digest());
-    let json = report::summary_json(NUMERICS, &digest, None, &summaries);
-    open.write("data/summary.json", json.pretty().as_bytes())?;
-    open.write(
-        "data/summary.csv",
-        report::summary_csv(&summaries).as_bytes(),
-    )?;
-    let keyed: Vec<(String, Grounds)> = points
-        .iter()
-        .map(|(summary, grounds)| (summary.key.clone(), grounds.clone()))
-        .collect();
-    let grounds = report::grounds_json(&keyed);
-    open.write("data/grounds.json", grounds.pretty().as_bytes())?;
-    let mut text = report::run_text(&plan.title, &plan.question, &points, report::WIDTH);
-    if !failed.is_empty() {
-        let json = failed_json(plan, &failed);
-        open.write("data/failed.json", json.pretty().as_bytes())?;
-        text.push_str(&failed_text(plan, &failed));
-    }
-    open.write("data/summary.txt", text.as_bytes())?;
-    let status = status_of(&json, &grounds, failed.len());
     circumstances.enter("kernels", kernels(plan, ends));
-    circumstances.end(&open, "done")?;
-    let path = open.finish()?;
+    let length = |end: &PointEnd<Reviewed>| {
+        let ended = end.ended.as_ref().ok()?;
+        Some((ended.burn_in, ended.draws))
+    };
+    let sealing = Sealing {
+        plan,
+        lengths: ends.iter().map(length).collect(),
+        files: outcome.files(),
+        result_digest: canon::hex(&outcome.digest()),
+    };
+    let path = record::seal(open, &sealing, circumstances)?;
+    let status = status(&path)?;
     Ok(Filed { path, status })
 }
 
@@ -113,54 +88,45 @@ fn kernels(plan: &Plan, ends: &[PointEnd<Reviewed>]) -> Json {
     Json::array(ends.iter().take(KERNELS).filter_map(point))
 }
 
-fn values_text(plan: &Plan, point: usize) -> String {
-    let values = plan.points[point].values.iter();
-    let values = values.map(|(path, value)| format!("{path} = {}", value.canonical()));
-    values.collect::<Vec<_>>().join(", ")
-}
-
-fn failed_text(plan: &Plan, failed: &[(usize, &str)]) -> String {
-    let mut text = format!("\nPoints that found no start: {}\n", failed.len());
-    for (point, words) in failed {
-        text.push_str(&format!("  {}: {words}\n", values_text(plan, *point)));
-    }
-    text
-}
-
-fn failed_json(plan: &Plan, failed: &[(usize, &str)]) -> Json {
-    let point = |(point, words): &(usize, &str)| {
-        let values = plan.points[*point].values.clone();
-        Json::object([
-            ("key", Json::text(canon::hex(&plan.point_key(*point)))),
-            ("values", Json::object(values)),
-            ("reason", Json::text(*words)),
-        ])
-    };
-    Json::object([("points", Json::array(failed.iter().map(point)))])
-}
-
-/// A folder that was finished before, if its files are those it ended with, and of this plan.
+/// A record sealed before, if its files are those it was sealed with, and of this plan.
 pub fn again(path: PathBuf, plan: &Plan) -> Result<Filed, RecordFault> {
-    record::check_seal(&path)?;
-    let json = |name: &str| {
-        let text = record::read(&path, name)?;
-        Json::read(&text).map_err(|words| RecordFault::foreign(&path.join(name), &words))
-    };
-    let summary = json("data/summary.json")?;
+    let differences = record::check_bag(&path)?;
+    if !differences.is_empty() {
+        return Err(RecordFault::Changed {
+            path,
+            differences: differences.join("\n"),
+        });
+    }
+    let name = "data/summary.json";
+    let summary = json(&path, name)?;
     let digest = canon::hex(&plan.digest());
     if summary.get("plan_digest").and_then(Json::as_text) != Some(&digest) {
         let words = "its summary is not that of this study";
         return Err(RecordFault::foreign(&path, words));
     }
-    let failed = if path.join("data/failed.json").exists() {
-        json("data/failed.json")?
+    let status = status(&path)?;
+    Ok(Filed { path, status })
+}
+
+fn json(record: &Path, name: &str) -> Result<Json, RecordFault> {
+    let text = record::read(record, name)?;
+    Json::read(&text).map_err(|words| RecordFault::foreign(&record.join(name), &words))
+}
+
+/// What the files of a record ask for.
+fn status(record: &Path) -> Result<Status, RecordFault> {
+    let name = "data/failed.json";
+    let failed = if record.join(name).exists() {
+        let failed = json(record, name)?;
+        failed
             .get("points")
             .map_or(0, |points| points.items().len())
     } else {
         0
     };
-    let status = status_of(&summary, &json("data/grounds.json")?, failed);
-    Ok(Filed { path, status })
+    let summary = json(record, "data/summary.json")?;
+    let grounds = json(record, "data/grounds.json")?;
+    Ok(status_of(&summary, &grounds, failed))
 }
 
 /// What the files of a finished run ask for.

@@ -4,11 +4,10 @@ use super::output::tell;
 use super::registry::FAMILIES;
 use super::status::Status;
 use crate::course::Condition;
-use crate::estimates::Summary;
-use crate::grounds::{Grounds, grounds};
 use crate::place::{Fault, Look, show};
 use crate::plan::Plan;
 use crate::reading::{self, LARGEST_STUDY};
+use crate::report::grounds_of;
 use std::io::IsTerminal;
 use std::path::Path;
 
@@ -52,12 +51,6 @@ fn tell_faults(faults: &[Fault]) -> Status {
 )]
 fn no_colour() -> bool {
     std::env::var_os("NO_COLOR").is_some_and(|value| !value.is_empty())
-}
-
-/// The grounds of a point of a plan, with what its draws add once it has run.
-pub fn grounds_of(plan: &Plan, point: usize, summary: Option<&Summary>) -> Grounds {
-    let conditions = plan.points[point].model.conditions();
-    grounds(&conditions, summary, &plan.accepted)
 }
 
 /// The failed conditions that stop a plan before its first draw, in words.

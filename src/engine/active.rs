@@ -170,12 +170,12 @@ impl<'s> Active<'s> {
             Phase::BurnIn => self.target / 2,
             Phase::Draws => 0,
         };
-        Columns {
-            ledgers: self.ledgers.clone(),
-            reader: reader.clone(),
-            phase: self.phase,
-            span: from..self.target,
-        }
+        Columns::new(
+            self.ledgers.clone(),
+            reader.clone(),
+            self.phase,
+            from..self.target,
+        )
     }
 
     /// Doubles the burn-in, or ends it.

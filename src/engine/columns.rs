@@ -13,12 +13,18 @@ pub struct Ledger {
 }
 
 impl Ledger {
-    pub(super) fn push(&mut self, phase: Phase, draws: usize, mark: Mark) {
+    /// Enters the next block of a phase.
+    pub fn push(&mut self, phase: Phase, draws: usize, mark: Mark) {
         let blocks = match phase {
             Phase::BurnIn => &mut self.burn_in,
             Phase::Draws => &mut self.draws,
         };
         blocks.push((draws as u64, mark));
+    }
+
+    /// The draws and the mark of every block of a phase.
+    pub fn marks(&self, phase: Phase) -> impl Iterator<Item = (u64, Mark)> + '_ {
+        self.blocks(phase).iter().copied()
     }
 
     fn blocks(&self, phase: Phase) -> &[(u64, Mark)] {
@@ -32,13 +38,28 @@ impl Ledger {
 /// A span of draws of one phase, of every chain of a point.
 #[derive(Clone)]
 pub struct Columns {
-    pub(super) ledgers: Vec<Ledger>,
-    pub(super) reader: Arc<dyn Reader>,
-    pub(super) phase: Phase,
-    pub(super) span: Range<u64>,
+    ledgers: Vec<Ledger>,
+    reader: Arc<dyn Reader>,
+    phase: Phase,
+    span: Range<u64>,
 }
 
 impl Columns {
+    /// The draws `span` of a phase, a ledger a chain.
+    pub fn new(
+        ledgers: Vec<Ledger>,
+        reader: Arc<dyn Reader>,
+        phase: Phase,
+        span: Range<u64>,
+    ) -> Columns {
+        Columns {
+            ledgers,
+            reader,
+            phase,
+            span,
+        }
+    }
+
     /// Chains of the point.
     pub fn chains(&self) -> usize {
         self.ledgers.len()

@@ -28,7 +28,7 @@ pub(crate) mod toy;
 pub mod trail;
 mod walk;
 
-pub use columns::Columns;
+pub use columns::{Columns, Ledger};
 pub use conduct::{Ended, Orders, PointEnd, conduct};
 pub use halt::Halt;
 pub use judge::{Judge, Settling, Verdict};

@@ -34,7 +34,8 @@ impl Task {
             .collect()
     }
 
-    fn of(plan: &Plan, index: usize) -> Task {
+    /// The task of one point.
+    pub fn of(plan: &Plan, index: usize) -> Task {
         let point = &plan.points[index];
         let all = 0..point.ensemble.chains;
         let stream_keys = plan.stream_keys(index, all.clone());

@@ -10,9 +10,8 @@
 //! after it do depend on how many chains there are and on what is recorded; without that, two chains of one
 //! key could differ.
 
-use crate::canon::{Json, hex};
+use crate::canon::{Json, hex, tagged};
 use crate::plan::types::*;
-use sha2::{Digest, Sha256};
 
 /// Version of the rule of [`crate::plan::block_length`].
 const BLOCK_RULE: u64 = 1;
@@ -157,16 +156,6 @@ fn values(point: &Point) -> Json {
     values.sort_by(|a, b| a.0.cmp(&b.0));
     let pair = |(path, value): &(String, Json)| Json::array([Json::text(&**path), value.clone()]);
     Json::array(values.into_iter().map(pair))
-}
-
-/// SHA-256 over a tag and the canonical text, each with its length before it.
-fn tagged(tag: &str, json: &Json) -> [u8; 32] {
-    let mut hash = Sha256::new();
-    for field in [tag.as_bytes(), json.canonical().as_bytes()] {
-        hash.update((field.len() as u64).to_le_bytes());
-        hash.update(field);
-    }
-    hash.finalize().into()
 }
 
 #[cfg(test)]

@@ -52,6 +52,7 @@ impl Plan {
             ("question", Json::text(&*self.question)),
             ("root", Json::text(&*self.root)),
             ("keep", self.keep_json()),
+            ("checkpoint_bytes", Json::Count(CHECKPOINT_BYTES)),
             ("accepted", self.accepted_json()),
             (
                 "sweep",

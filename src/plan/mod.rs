@@ -7,6 +7,6 @@ mod types;
 
 pub use block::{block_length, reviews};
 pub use types::{
-    Accepted, BurnIn, Combine, Data, Ensemble, Estimand, EstimandGoal, Give, Goal, Input, Keep,
-    MOST_DRAWS, NUMERICS, Numerics, Plan, Point, Prediction, Streams, SweepAxis,
+    Accepted, BurnIn, CHECKPOINT_BYTES, Combine, Data, Ensemble, Estimand, EstimandGoal, Give,
+    Goal, Input, Keep, MOST_DRAWS, NUMERICS, Numerics, Plan, Point, Prediction, Streams, SweepAxis,
 };

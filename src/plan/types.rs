@@ -20,6 +20,10 @@ pub const NUMERICS: Numerics = Numerics {
     estimates: 1,
 };
 
+/// Bytes of saved states that a record keeps, all points together, beyond the last of each phase: so many that
+/// any part of a run can be drawn again without drawing all before it.
+pub const CHECKPOINT_BYTES: u64 = 64 << 20;
+
 /// A study resolved: what a run follows.
 #[derive(Debug, Clone)]
 pub struct Plan {

@@ -1,13 +1,12 @@
 //! Who worked on a run, when, where and with what: one entry a start. Outside every digest.
 
+use super::bag::CIRCUMSTANCES as NAME;
 use super::fault::RecordFault;
 use super::folder::Open;
 use super::moment;
 use crate::canon::Json;
 use std::fs;
 use std::io;
-
-const NAME: &str = "circumstances.json";
 
 /// The starts of a run, this one last.
 #[derive(Debug, Clone, PartialEq)]

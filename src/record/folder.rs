@@ -1,23 +1,24 @@
-//! Layout of the folder that a run leaves.
+//! Layout of the folder that a run leaves: a record, once it is sealed.
 //!
 //! ```text
 //! <into>/<study>/<first 12 of the plan digest>.open/     while it is worked on
-//! <into>/<study>/<first 12 of the plan digest>/          when it is done
-//!   data/study.toml  data/inputs/…                       byte for byte
-//!   data/plan.json  data/summary.json  data/summary.csv  data/summary.txt  data/grounds.json
-//!   manifest-sha256.txt                                  what stands under data/, written last
-//!   circumstances.json                                   one entry a start; outside every digest
 //!   journal                                              the draws
-//!   lock                                                 while it is worked on
+//!   lock
+//! <into>/<study>/<first 12 of the plan digest>/          when it is sealed
+//!   bagit.txt  bag-info.txt  manifest-sha256.txt  tagmanifest-sha256.txt
+//!   circumstances.json                                   one entry a start; outside every digest
+//!   data/study.toml  data/inputs/…                       byte for byte
+//!   data/plan.json
+//!   data/draws/…  data/trail.parquet  data/checkpoints/…
+//!   data/summary.json  data/summary.csv  data/summary.txt  data/grounds.json  data/report.html
 //! ```
 //!
-//! Every file but the journal is written aside and renamed; when all are there they are forced to the disk, and
-//! the folder itself is renamed last.
+//! Every file but the journal is written aside and renamed; when all are there they are forced to the disk, the
+//! folder is renamed, and the journal, whose draws now stand in the record, is removed.
 
 use super::fault::RecordFault;
 use super::journal::JournalFile;
 use super::lock::Lock;
-use super::seal;
 use crate::canon;
 use crate::engine::trail::Digest;
 use std::fs::{self, File};
@@ -68,6 +69,7 @@ impl Folder {
         let mut tries = 0;
         let lock = loop {
             if self.done.exists() {
+                clear(&self.done);
                 return Ok(Entry::Done(self.done.clone()));
             }
             // Another process that ends its run gives the folder its name between these steps; then its results
@@ -121,20 +123,24 @@ impl Open {
         })
     }
 
-    /// Lists what stands under `data/` and gives the folder its name; nothing in it changes any more.
-    pub fn finish(self) -> Result<PathBuf, RecordFault> {
-        self.write(seal::NAME, seal::list(self.path())?.as_bytes())?;
+    /// Forces everything to the disk and gives the folder its name.
+    pub(super) fn finish(self) -> Result<PathBuf, RecordFault> {
         let Folder { open, done, .. } = &self.folder;
         let renamed = || -> io::Result<()> {
-            for inner in ["data/inputs", "data", ""] {
-                let inner = open.join(inner);
-                for entry in fs::read_dir(&inner)? {
-                    File::open(entry?.path())?.sync_all()?;
+            let mut folders = vec![open.clone()];
+            while let Some(folder) = folders.pop() {
+                for entry in fs::read_dir(&folder)? {
+                    let path = entry?.path();
+                    if path.is_dir() {
+                        folders.push(path);
+                    } else {
+                        File::open(path)?.sync_all()?;
+                    }
                 }
-                File::open(inner)?.sync_all()?;
+                File::open(folder)?.sync_all()?;
             }
             fs::rename(open, done)?;
-            fs::remove_file(done.join("lock"))?;
+            clear(done);
             match done.parent() {
                 Some(parent) => File::open(parent)?.sync_all(),
                 None => Ok(()),
@@ -142,6 +148,14 @@ impl Open {
         };
         renamed().map_err(|fault| RecordFault::disk("finish", done, &fault))?;
         Ok(done.clone())
+    }
+}
+
+/// Removes what a record no longer needs once it has its name. What a kill leaves of it is removed the next
+/// time, so a failure here is none.
+fn clear(done: &Path) {
+    for name in ["journal", "lock"] {
+        let _ = fs::remove_file(done.join(name));
     }
 }
 
@@ -178,7 +192,7 @@ mod tests {
             .unwrap()
             .map(|entry| entry.unwrap().file_name())
             .collect();
-        assert!(!names.contains(&"lock".into()), "{names:?}");
+        assert_eq!(names, ["data"]);
         assert!(matches!(folder.enter().unwrap(), Entry::Done(path) if path == done));
         let left: Vec<_> = fs::read_dir(done.parent().unwrap()).unwrap().collect();
         assert_eq!(left.len(), 1);

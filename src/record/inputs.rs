@@ -25,7 +25,9 @@ pub fn keep(open: &Open, inputs: &[Input]) -> Result<(), RecordFault> {
 fn named(inputs: &[Input]) -> Vec<(String, &Input)> {
     let plain = |input: &Input| {
         let name = input.path.file_name().unwrap_or_default();
-        name.to_string_lossy().into_owned()
+        // What lists of digests would have to escape.
+        let escaped = |c: char| c.is_control() || matches!(c, '\\' | '%');
+        name.to_string_lossy().replace(escaped, "_")
     };
     let mut all: Vec<(String, &Input)> = Vec::new();
     for input in inputs {

@@ -85,6 +85,24 @@ impl JournalFile {
         self.end
     }
 
+    /// Every block that stands by now, each byte of it read and held against its digests.
+    pub(super) fn rescan(&mut self) -> Result<Shelf, RecordFault> {
+        let scanned = scan(&self.file, self.end).map_err(|broken| match broken {
+            Broken::Io(fault) => RecordFault::disk("read", &self.path, &fault),
+            Broken::Order(words) => RecordFault::foreign(&self.path, &words),
+        })?;
+        if scanned.end < self.end {
+            return Err(self.lacking());
+        }
+        Ok(scanned.shelf)
+    }
+
+    /// The fault of a journal that no longer holds what was written to it.
+    pub(super) fn lacking(&self) -> RecordFault {
+        let changed = io::Error::other("blocks are no longer what was written");
+        RecordFault::disk("read", &self.path, &changed)
+    }
+
     /// Asks that what is written be on the disk soon.
     pub fn sync_soon(&mut self) {
         self.syncer.ask();

@@ -1,6 +1,10 @@
-//! The folder that a run leaves: its layout, its lock, its journal, its circumstances, the room it needs.
+//! The folder that a run leaves: its lock and journal while it is worked on, the record when it is sealed.
 
+mod bag;
+mod checkpoints;
 mod circumstances;
+mod columnar;
+mod draws_file;
 mod fault;
 mod folder;
 mod frame;
@@ -12,12 +16,17 @@ mod room;
 mod scan;
 mod seal;
 mod sync;
+mod trail_file;
 
+pub use bag::check as check_bag;
+pub use checkpoints::Checkpoints;
 pub use circumstances::Circumstances;
+pub use draws_file::DrawsFile;
 pub use fault::RecordFault;
 pub use folder::{Entry, Folder, Open, read};
 pub use inputs::keep as keep_inputs;
 pub use journal::JournalFile;
 pub use room::{Needs, check as check_room, needs, size};
 pub use scan::Cut;
-pub use seal::check as check_seal;
+pub use seal::{Sealing, seal, starts};
+pub use trail_file::TrailRow;

@@ -1,208 +1,190 @@
-//! The list of what a finished folder holds: the SHA-256 of every file under `data/`, as `sha256sum -c` reads it.
-//!
-//! It shows a file that was changed by accident or in passing; who rewrites the list as well is not seen.
+//! Sealing: from the journal of a run that has ended to a record under its name, in bounded memory.
 
+use super::bag;
+use super::checkpoints;
+use super::circumstances::Circumstances;
+use super::draws_file;
 use super::fault::RecordFault;
-use crate::canon;
-use sha2::{Digest as _, Sha256};
-use std::fs::{self, File};
-use std::io::{self, Read};
+use super::folder::Open;
+use super::trail_file::{self, TrailRow};
+use crate::course::{Phase, Quantity};
+use crate::engine::trail::{self, Digest, StateHash};
+use crate::engine::{Journal, Reader, Stood, Task};
+use crate::plan::{CHECKPOINT_BYTES, Keep, Plan};
+use std::collections::BTreeMap;
+use std::fs;
+use std::io;
 use std::path::{Path, PathBuf};
 
-/// Beside `data/`, in the folder.
-pub const NAME: &str = "manifest-sha256.txt";
-
-/// Bytes read at a time.
-const CHUNK: usize = 1 << 16;
-
-/// The list for a folder: a line a file, sorted by its path from the folder.
-pub fn list(folder: &Path) -> Result<String, RecordFault> {
-    let mut text = String::new();
-    for (name, path) in files(folder)? {
-        let digest = sha256(&path).map_err(|fault| RecordFault::disk("read", &path, &fault))?;
-        text.push_str(&line(&digest, &name));
-        text.push('\n');
-    }
-    Ok(text)
+/// What is sealed beside the draws.
+pub struct Sealing<'a> {
+    pub plan: &'a Plan,
+    /// Draws a chain in burn-in and after it, of each point; `None` for a point without figures.
+    pub lengths: Vec<Option<(u64, u64)>>,
+    /// Files rendered from plan and outcome.
+    pub files: Vec<(&'static str, Vec<u8>)>,
+    /// In hexadecimal.
+    pub result_digest: String,
 }
 
-/// Holds the files under `data/` against the list.
-///
-/// # Errors
-/// `Changed`, naming every file that is not as it was, is gone or came in since.
-pub fn check(folder: &Path) -> Result<(), RecordFault> {
-    let changed = |differences: Vec<String>| RecordFault::Changed {
-        path: folder.to_owned(),
-        differences: differences.join("\n"),
-    };
-    let text = match fs::read(folder.join(NAME)) {
-        Ok(bytes) => String::from_utf8_lossy(&bytes).into_owned(),
-        Err(fault) if fault.kind() == io::ErrorKind::NotFound => {
-            return Err(changed(vec![format!(
-                "{NAME}, which every finished run has, is gone"
-            )]));
-        }
-        Err(fault) => return Err(RecordFault::disk("read", &folder.join(NAME), &fault)),
-    };
-    let found = files(folder)?;
-    let mut listed: Vec<&str> = text.lines().collect();
-    let mut differences = Vec::new();
-    for (name, path) in &found {
-        let at = listed.iter().position(|line| named(line) == escaped(name));
-        let Some(at) = at else {
-            differences.push(format!("{name} was not there when the run ended"));
-            continue;
-        };
-        let listed = listed.swap_remove(at);
-        // What stands in the place of a file may be anything, also something that never ends.
-        let plain = fs::metadata(path).is_ok_and(|found| found.is_file());
-        let digest = if plain { sha256(path).ok() } else { None };
-        let same = digest.is_some_and(|digest| line(&digest, name) == listed);
-        if !same {
-            differences.push(format!("{name} is not as it was when the run ended"));
-        }
-    }
-    for line in listed {
-        differences.push(format!(
-            "{} was there when the run ended, and is gone",
-            named(line)
-        ));
-    }
-    if differences.is_empty() {
-        Ok(())
-    } else {
-        Err(changed(differences))
-    }
-}
-
-/// As `sha256sum` writes it: where a name had to be escaped, a backslash leads the line.
-fn line(digest: &str, name: &str) -> String {
-    let escaped = escaped(name);
-    let mark = if escaped == name { "" } else { "\\" };
-    format!("{mark}{digest}  {escaped}")
-}
-
-/// A name as it stands in a line.
-fn escaped(name: &str) -> String {
-    let name = name.replace('\\', "\\\\").replace('\n', "\\n");
-    name.replace('\r', "\\r")
-}
-
-/// The name in a line.
-fn named(line: &str) -> &str {
-    line.split_once("  ").map_or(line, |(_, name)| name)
-}
-
-/// Everything under `data/` that is no folder, by its path from the top with `/` between, sorted.
-fn files(folder: &Path) -> Result<Vec<(String, PathBuf)>, RecordFault> {
-    let mut files = Vec::new();
-    let mut folders = vec![("data".to_owned(), folder.join("data"))];
-    while let Some((name, path)) = folders.pop() {
-        let disk = |fault| RecordFault::disk("read", &path, &fault);
-        let entries = match fs::read_dir(&path) {
-            Ok(entries) => entries,
-            // All that is listed is then told to be gone.
-            Err(fault) if fault.kind() == io::ErrorKind::NotFound => continue,
-            Err(fault) => return Err(disk(fault)),
-        };
-        for entry in entries {
-            let entry = entry.map_err(disk)?;
-            let inner = format!("{name}/{}", entry.file_name().to_string_lossy());
-            let found = (inner, entry.path());
-            if entry.file_type().map_err(disk)?.is_dir() {
-                folders.push(found);
-            } else {
-                files.push(found);
+/// Writes the record of a run from its journal and gives the folder its name; nothing in it changes any more.
+pub fn seal(
+    mut open: Open,
+    sealing: &Sealing<'_>,
+    circumstances: Circumstances,
+) -> Result<PathBuf, RecordFault> {
+    for inner in ["data/draws", "data/checkpoints"] {
+        let path = open.path().join(inner);
+        match fs::remove_dir_all(&path) {
+            Err(fault) if fault.kind() != io::ErrorKind::NotFound => {
+                return Err(RecordFault::disk("clear", &path, &fault));
             }
+            _ => {}
+        }
+        fs::create_dir_all(&path).map_err(|fault| RecordFault::disk("make", &path, &fault))?;
+    }
+    let shelf = open.journal.rescan()?;
+    let reader = open.journal.reader();
+    let mut rows = Vec::new();
+    for (point, lengths) in sealing.lengths.iter().enumerate() {
+        if let Some(lengths) = lengths {
+            let chains = cut(
+                &shelf,
+                point,
+                sealing.plan.points[point].ensemble.chains,
+                *lengths,
+            )
+            .ok_or_else(|| open.journal.lacking())?;
+            rows.extend(trail_of(sealing.plan, point, &chains)?);
+            write_point(open.path(), sealing.plan, point, &chains, &*reader)?;
         }
     }
-    files.sort();
-    Ok(files)
+    let path = open.path().join(trail_file::NAME);
+    trail_file::write(&path, &rows).map_err(|fault| RecordFault::disk("write", &path, &fault))?;
+    for (name, bytes) in &sealing.files {
+        open.write(name, bytes)?;
+    }
+    circumstances.end(&open, "sealed")?;
+    bag::write(open.path(), &sealing.plan.title, &sealing.result_digest)?;
+    open.finish()
 }
 
-/// In hexadecimal, of a file of any length.
-fn sha256(path: &Path) -> io::Result<String> {
-    let mut file = File::open(path)?;
-    let mut hash = Sha256::new();
-    let mut chunk = vec![0; CHUNK];
-    loop {
-        match file.read(&mut chunk) {
-            Ok(0) => return Ok(canon::hex(&hash.finalize().into())),
-            Ok(count) => hash.update(&chunk[..count]),
-            Err(fault) if fault.kind() == io::ErrorKind::Interrupted => {}
-            Err(fault) => return Err(fault),
-        }
-    }
-}
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-
-    fn sealed() -> tempfile::TempDir {
-        let folder = tempfile::tempdir().unwrap();
-        let path = folder.path();
-        fs::create_dir_all(path.join("data/inputs")).unwrap();
-        fs::write(path.join("data/a.json"), "abc").unwrap();
-        fs::write(path.join("data/inputs/b c.csv"), vec![7; 3 * CHUNK + 1]).unwrap();
-        fs::write(path.join("data/inputs/odd\\one\nof two.csv"), "abc").unwrap();
-        fs::write(path.join("journal"), "not listed").unwrap();
-        fs::write(path.join(NAME), list(path).unwrap()).unwrap();
-        folder
-    }
-
-    fn told(folder: &Path) -> String {
-        match check(folder) {
-            Ok(()) => String::new(),
-            Err(fault) => {
-                assert!(matches!(fault, RecordFault::Changed { .. }), "{fault:?}");
-                fault.to_string()
+/// The blocks of every chain of a point up to these lengths.
+fn cut(
+    shelf: &BTreeMap<(usize, usize), Vec<Stood>>,
+    point: usize,
+    chains: u64,
+    (burn_in, draws): (u64, u64),
+) -> Option<Vec<Vec<Stood>>> {
+    let one = |chain: u64| {
+        let stood = shelf.get(&(point, chain as usize))?;
+        let (mut phases, mut blocks) = ([0, 0], Vec::new());
+        for block in stood {
+            let (done, most) = match block.phase {
+                Phase::BurnIn => (&mut phases[0], burn_in),
+                Phase::Draws => (&mut phases[1], draws),
+            };
+            if *done + block.draws as u64 > most {
+                break;
             }
+            *done += block.draws as u64;
+            blocks.push(*block);
+        }
+        (phases == [burn_in, draws]).then_some(blocks)
+    };
+    (0..chains).map(one).collect()
+}
+
+/// The rows of a point's trail. The starts are made again from plan and root.
+fn trail_of(
+    plan: &Plan,
+    point: usize,
+    chains: &[Vec<Stood>],
+) -> Result<Vec<TrailRow>, RecordFault> {
+    let starts = starts(plan, point).map_err(RecordFault::Input)?;
+    let mut rows = Vec::new();
+    for (chain, (blocks, (state_hash, link))) in chains.iter().zip(starts).enumerate() {
+        rows.push(TrailRow {
+            point,
+            chain,
+            block: 0,
+            phase: Phase::BurnIn,
+            draws: 0,
+            draws_digest: trail::plain(&[]),
+            state_hash,
+            link,
+        });
+        rows.extend((1..).zip(blocks).map(|(block, stood)| TrailRow {
+            point,
+            chain,
+            block,
+            phase: stood.phase,
+            draws: stood.draws as u64,
+            draws_digest: stood.draws_digest,
+            state_hash: stood.state_hash,
+            link: stood.link,
+        }));
+    }
+    Ok(rows)
+}
+
+/// State hash and link of the start of every chain of a point, from plan and root alone. Fails in words where
+/// a chain finds no start.
+pub fn starts(plan: &Plan, point: usize) -> Result<Vec<(StateHash, Digest)>, String> {
+    let task = Task::of(plan, point);
+    let mut starts = Vec::new();
+    for chains in task.chains.chunks(crate::engine::WIDEST) {
+        let seeds: Vec<_> = chains.iter().map(|chain| chain.seed.clone()).collect();
+        let course = task.model.clone().course(&seeds).map_err(|fault| fault.0)?;
+        for (lane, chain) in chains.iter().enumerate() {
+            let hash = StateHash::of(&course.save(lane));
+            starts.push((hash, trail::first_link(&chain.key, &hash)));
         }
     }
+    Ok(starts)
+}
 
-    #[test]
-    fn the_list_is_sorted_and_plain() {
-        let folder = sealed();
-        let text = fs::read_to_string(folder.path().join(NAME)).unwrap();
-        let lines: Vec<&str> = text.lines().collect();
-        // FIPS 180-4 example "abc" (from memory).
-        let abc = "ba7816bf8f01cfea414140de5dae2223b00361a396177a9cb410ff61f20015ad";
-        assert_eq!(lines.len(), 3);
-        assert_eq!(lines[0], format!("{abc}  data/a.json"));
-        assert!(lines[1].ends_with("  data/inputs/b c.csv"));
-        let odd = format!("\\{abc}  data/inputs/odd\\\\one\\nof two.csv");
-        assert_eq!(lines[2], odd);
-        assert_eq!(told(folder.path()), "");
-    }
-
-    #[test]
-    fn what_changed_came_or_went_is_named() {
-        let folder = sealed();
-        let path = folder.path();
-        fs::write(path.join("journal"), "changed").unwrap();
-        assert_eq!(told(path), "");
-        fs::write(path.join("data/a.json"), "abd").unwrap();
-        fs::write(path.join("data/inputs/c.csv"), "").unwrap();
-        fs::remove_file(path.join("data/inputs/b c.csv")).unwrap();
-        let told = told(path);
-        for part in [
-            "data/a.json is not as it was when the run ended",
-            "data/inputs/c.csv was not there",
-            "data/inputs/b c.csv was there",
-        ] {
-            assert!(told.contains(part), "{part} is missing in:\n{told}");
+fn write_point(
+    folder: &Path,
+    plan: &Plan,
+    point: usize,
+    chains: &[Vec<Stood>],
+    reader: &dyn Reader,
+) -> Result<(), RecordFault> {
+    let quantities: &[Quantity] = plan.points[point].model.quantities();
+    if plan.keep == Keep::Draws {
+        for phase in [Phase::BurnIn, Phase::Draws] {
+            let of_phase = |blocks: &Vec<Stood>| -> Vec<Stood> {
+                blocks
+                    .iter()
+                    .filter(|block| block.phase == phase)
+                    .copied()
+                    .collect()
+            };
+            let blocks: Vec<Vec<Stood>> = chains.iter().map(of_phase).collect();
+            if blocks.iter().all(Vec::is_empty) {
+                continue;
+            }
+            let path = folder.join(draws_file::name(point, phase));
+            draws_file::write(&path, quantities, &blocks, reader)
+                .map_err(|fault| RecordFault::disk("write", &path, &fault))?;
         }
-        assert!(!told.contains("odd"), "{told}");
     }
-
-    #[test]
-    fn without_its_list_nothing_is_trusted() {
-        let folder = sealed();
-        fs::remove_file(folder.path().join(NAME)).unwrap();
-        assert!(told(folder.path()).contains(NAME));
-        let folder = sealed();
-        fs::remove_dir_all(folder.path().join("data")).unwrap();
-        assert!(told(folder.path()).contains("data/a.json was there"));
-    }
+    let phases: Vec<Phase> = chains.first().map_or(Vec::new(), |blocks| {
+        blocks.iter().map(|block| block.phase).collect()
+    });
+    let path = folder.join(checkpoints::name(point));
+    let disk = |fault| RecordFault::disk("write", &path, &fault);
+    let size = match chains.first().and_then(|blocks| blocks.last()) {
+        Some(last) => {
+            let state = reader
+                .state(last)
+                .map_err(|words| disk(io::Error::other(words)))?;
+            state.frozen.len() + state.moving.len()
+        }
+        None => 0,
+    };
+    let bound = CHECKPOINT_BYTES / plan.points.len() as u64;
+    let kept = checkpoints::kept(&phases, size, chains.len(), bound);
+    checkpoints::write(&path, chains, &kept, reader).map_err(disk)
 }

@@ -1,11 +1,13 @@
 //! What a reader sees, as pure functions of plan, summaries and grounds: `summary.json`, `summary.csv`,
-//! `grounds.json` and plain text for a terminal.
+//! `grounds.json`, the page, and plain text for a terminal.
 
 mod csv;
 mod figures;
 mod grounds_text;
 mod json;
 mod layout;
+mod outcome;
+mod page;
 #[cfg(test)]
 mod samples;
 #[cfg(test)]
@@ -17,6 +19,8 @@ pub use csv::summary_csv;
 pub use figures::figures_text;
 pub use grounds_text::grounds_text;
 pub use json::{grounds_json, summary_json};
+pub use outcome::{Outcome, grounds_of};
+pub use page::report_html;
 pub use sweep::sweep_text;
 pub use text::{FOOT, run_text};
 
