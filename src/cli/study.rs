@@ -6,7 +6,7 @@ use super::status::Status;
 use crate::course::Condition;
 use crate::place::{Fault, Look, show};
 use crate::plan::Plan;
-use crate::reading::{self, LARGEST_STUDY};
+use crate::reading::{self, Files, LARGEST_STUDY};
 use crate::report::grounds_of;
 use std::io::IsTerminal;
 use std::path::Path;
@@ -24,8 +24,7 @@ pub fn read(file: &Path) -> Result<Read, Status> {
         let bytes = reading::read(file, LARGEST_STUDY).map_err(whole)?.bytes;
         let source = reading::text(bytes.clone(), &file.display().to_string());
         let source = source.map_err(|fault| vec![fault])?;
-        let folder = file.parent().unwrap_or("".as_ref());
-        let plan = crate::study::resolve_text(source, folder, &FAMILIES)?;
+        let plan = crate::study::resolve_text(source, &Files::beside(file), &FAMILIES)?;
         Ok(Read { plan, bytes })
     };
     resolved().map_err(|faults| tell_faults(&faults))

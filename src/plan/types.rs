@@ -50,6 +50,8 @@ pub struct Plan {
 /// A file that a study names: data or a start.
 #[derive(Debug, Clone, PartialEq, Eq)]
 pub struct Input {
+    /// The path as the study writes it.
+    pub written: String,
     pub path: PathBuf,
     /// Lower-case hexadecimal, of the bytes it had.
     pub sha256: String,

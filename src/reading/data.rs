@@ -1,14 +1,15 @@
 //! `[data.NAME]`: which file, and how it is to be read.
 
 use crate::place::{Fault, Faults, Text};
+use crate::reading::Files;
 use crate::reading::file::{self, LARGEST_DATA};
 use crate::reading::load::{How, Missing, load};
 use crate::reading::{Section, Table};
 use std::path::Path;
 
-/// Reads a section `[data.NAME]` and the file it names; paths are relative to `folder`. A table is given
+/// Reads a section `[data.NAME]` and the file it names; the file is one of `files`. A table is given
 /// even where faults were recorded, if its cells are sound: what else a study says of it can then be looked at.
-pub fn data(name: &str, section: &Section, folder: &Path, faults: &mut Faults) -> Option<Table> {
+pub fn data(name: &str, section: &Section, files: &Files, faults: &mut Faults) -> Option<Table> {
     let path = section
         .need(
             "file",
@@ -19,20 +20,21 @@ pub fn data(name: &str, section: &Section, folder: &Path, faults: &mut Faults) -
     let pinned = section.text("sha256", faults);
     let how = how(section, faults);
     section.finish(faults);
-    table(name, &path?, folder, pinned.as_ref(), &how, faults)
+    table(name, &path?, files, pinned.as_ref(), &how, faults)
 }
 
 /// Reads a data file by its path; a fault of the file as a whole is shown at the path.
 pub fn table(
     name: &str,
     path: &Text,
-    folder: &Path,
+    files: &Files,
     pinned: Option<&Text>,
     how: &How,
     faults: &mut Faults,
 ) -> Option<Table> {
-    let at = folder.join(&path.text);
-    let read = match file::read(&at, LARGEST_DATA) {
+    let found = files.find(&path.text);
+    let read = found.and_then(|at| Ok((file::read(&at, LARGEST_DATA)?, at)));
+    let (read, at) = match read {
         Ok(read) => read,
         Err(what) => {
             faults.push(

@@ -4,6 +4,7 @@ mod column;
 mod csv;
 mod data;
 mod file;
+mod files;
 mod load;
 mod parse;
 mod section;
@@ -17,6 +18,7 @@ mod tests;
 
 pub use data::{data, table};
 pub use file::{Bytes, LARGEST_DATA, LARGEST_STUDY, read, text};
+pub use files::Files;
 pub use load::{How, Missing, load};
 pub use parse::parse;
 pub use section::Section;

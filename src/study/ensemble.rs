@@ -3,8 +3,7 @@
 use crate::course::StartSpec;
 use crate::place::{Fault, Faults};
 use crate::plan::{BurnIn, Ensemble, MOST_DRAWS};
-use crate::reading::{self, How, Section, Value};
-use std::path::Path;
+use crate::reading::{self, Files, How, Section, Value};
 use std::sync::Arc;
 
 const CHAINS: u64 = 8;
@@ -21,7 +20,7 @@ const SHORTEST_CHOSEN: u64 = 20;
 /// The start is `None` only if something is at fault in the section.
 pub(super) fn read(
     root: &Section,
-    folder: &Path,
+    files: &Files,
     faults: &mut Faults,
 ) -> (Ensemble, Option<StartSpec>) {
     let mut ensemble = Ensemble {
@@ -65,7 +64,7 @@ pub(super) fn read(
     }
     let start = match section.value("start") {
         None => Some(StartSpec::Spread),
-        Some(value) => start(&value, folder, faults),
+        Some(value) => start(&value, files, faults),
     };
     if let Some(StartSpec::File { path, table }) = &start
         && (table.rows as u64) < ensemble.chains
@@ -122,7 +121,7 @@ fn burn_in(value: &Value, faults: &mut Faults) -> Option<BurnIn> {
 }
 
 /// `"spread"`, `"prior"`, `{ at = {…} }` or `{ file = "…" }`.
-fn start(value: &Value, folder: &Path, faults: &mut Faults) -> Option<StartSpec> {
+fn start(value: &Value, files: &Files, faults: &mut Faults) -> Option<StartSpec> {
     if value.is_text() {
         let word = value.word(&["spread", "prior"], faults)?;
         return Some(match word {
@@ -146,7 +145,7 @@ fn start(value: &Value, folder: &Path, faults: &mut Faults) -> Option<StartSpec>
         (None, Some(file)) => {
             let path = file.text(faults)?;
             let how = How::default();
-            let table = reading::table("start", &path, folder, None, &how, faults)?;
+            let table = reading::table("start", &path, files, None, &how, faults)?;
             Some(StartSpec::File {
                 path,
                 table: Arc::new(table),

@@ -4,12 +4,11 @@ use crate::canon::Json;
 use crate::course::{Family, Request, StartSpec};
 use crate::place::{Fault, Faults, Text};
 use crate::plan::{Data, Input, Point, Prediction, block_length};
-use crate::reading::{self, Content, Section, Table, Tree, Value};
+use crate::reading::{self, Content, Files, Section, Table, Tree, Value};
 use crate::study::estimand::{self, identifier, printed};
 use crate::study::sweep::json;
 use crate::study::{ensemble, goal};
 use std::collections::BTreeMap;
-use std::path::Path;
 use std::sync::Arc;
 
 /// Quantities that a point can record: their figures, with names and notes, are held in memory together.
@@ -17,7 +16,7 @@ const MOST_QUANTITIES: usize = 100_000;
 
 /// What the points of a study have in common while they are resolved.
 pub(super) struct Surroundings<'a> {
-    folder: &'a Path,
+    files: &'a Files,
     registry: &'a [&'a dyn Family],
     /// Data files read so far: a sweep rarely touches them.
     read: Vec<Read>,
@@ -33,18 +32,21 @@ struct Read {
 }
 
 impl<'a> Surroundings<'a> {
-    pub fn new(folder: &'a Path, registry: &'a [&'a dyn Family]) -> Surroundings<'a> {
+    pub fn new(files: &'a Files, registry: &'a [&'a dyn Family]) -> Surroundings<'a> {
         Surroundings {
-            folder,
+            files,
             registry,
             read: Vec::new(),
             inputs: Vec::new(),
         }
     }
 
-    fn enter(&mut self, path: &Text, sha256: &str) {
+    fn enter(&mut self, written: &Text, sha256: &str) {
+        let written = written.text.clone();
+        let path = self.files.find(&written).expect("it was read");
         let input = Input {
-            path: self.folder.join(&path.text),
+            written,
+            path,
             sha256: sha256.to_string(),
         };
         if !self.inputs.contains(&input) {
@@ -66,7 +68,7 @@ impl<'a> Surroundings<'a> {
             return Some(read.found.clone());
         }
         let before = faults.count();
-        let table = reading::data(name, section, self.folder, faults);
+        let table = reading::data(name, section, self.files, faults);
         if let (Some(table), Some(path)) = (&table, section.text("file", faults)) {
             self.enter(&path, &table.sha256);
         }
@@ -92,7 +94,7 @@ pub(super) fn resolve_point(
     faults: &mut Faults,
 ) -> Option<Point> {
     let (data, tables) = tables(root, surroundings, faults);
-    let (ensemble, start) = ensemble::read(root, surroundings.folder, faults);
+    let (ensemble, start) = ensemble::read(root, surroundings.files, faults);
     if let Some(StartSpec::File { path, table }) = &start {
         surroundings.enter(path, &table.sha256);
     }

@@ -3,7 +3,7 @@
 use crate::course::Family;
 use crate::place::{Fault, Faults, Place, Source};
 use crate::plan::{Plan, Point, Streams};
-use crate::reading::{self, LARGEST_STUDY, Section};
+use crate::reading::{self, Files, LARGEST_STUDY, Section};
 use crate::study::frame::Frame;
 use crate::study::point::{Surroundings, resolve_point};
 use crate::study::shared::shared_content;
@@ -26,21 +26,20 @@ pub fn resolve(file: &Path, registry: &[&dyn Family]) -> Result<Plan, Vec<Fault>
         Ok(source) => source,
         Err(fault) => return Err(vec![fault]),
     };
-    let folder = file.parent().unwrap_or(Path::new(""));
-    resolve_text(source, folder, registry)
+    resolve_text(source, &Files::beside(file), registry)
 }
 
-/// The same for a text read already; paths in it are relative to `folder`.
+/// The same for a text read already; what it names is one of `files`.
 pub fn resolve_text(
     source: Arc<Source>,
-    folder: &Path,
+    files: &Files,
     registry: &[&dyn Family],
 ) -> Result<Plan, Vec<Fault>> {
     let mut faults = Faults::default();
     let root = reading::parse(&source, &mut faults);
     let frame = Frame::read(&root, &mut faults);
     let sweep = Sweep::read(&root, &mut faults);
-    let mut surroundings = Surroundings::new(folder, registry);
+    let mut surroundings = Surroundings::new(files, registry);
     let points = match &sweep {
         Some(sweep) => points(&root, sweep, &mut surroundings, &mut faults),
         // Of a sweep at fault the study itself is still worth looking at.

@@ -7,7 +7,7 @@ use crate::course::{
 };
 use crate::place::{Fault, Faults, Look, Source, show};
 use crate::plan::{BurnIn, EstimandGoal, Give, Plan};
-use std::path::Path;
+use crate::reading::Files;
 use std::sync::Arc;
 
 /// Records its estimands; refuses a negative constant.
@@ -107,7 +107,7 @@ fn resolved(text: &str) -> Result<Plan, Vec<Fault>> {
         name: "study.toml".into(),
         text: text.into(),
     });
-    resolve_text(source, Path::new("manifests"), &[&Plain])
+    resolve_text(source, &Files::Folder("manifests".into()), &[&Plain])
 }
 
 fn plan(text: &str) -> Plan {

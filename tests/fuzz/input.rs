@@ -5,7 +5,7 @@ use odograph::cli::FAMILIES;
 use odograph::formula;
 use odograph::place::{Faults, Look, Source, Text, show};
 use odograph::random::{Purpose, Stream};
-use odograph::reading::Table;
+use odograph::reading::{Files, Table};
 use odograph::study::resolve_text;
 use std::fmt;
 use std::fs;
@@ -52,7 +52,7 @@ impl Input {
                     name: "study.toml".into(),
                     text: text.clone(),
                 });
-                match resolve_text(source, folder, &FAMILIES) {
+                match resolve_text(source, &Files::Folder(folder.into()), &FAMILIES) {
                     Ok(plan) => {
                         plan.json().canonical();
                     }

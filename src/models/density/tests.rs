@@ -2,7 +2,7 @@ use super::*;
 use crate::course::{EstimandSpec, Phase, StartSpec};
 use crate::maths::Unary;
 use crate::place::{Source, Text};
-use crate::reading::{Section, Table, data, parse};
+use crate::reading::{Files, Section, Table, data, parse};
 use std::collections::BTreeMap;
 
 fn ln(x: f64) -> f64 {
@@ -28,7 +28,8 @@ fn stations(missing: bool) -> BTreeMap<String, Arc<Table>> {
     std::fs::write(folder.path().join("stations.csv"), text).expect("a file");
     let declared = section("file = \"stations.csv\"\nnames = \"station\"\nmissing = \"unknown\"\n");
     let mut faults = Faults::default();
-    let table = data("stations", &declared, folder.path(), &mut faults).expect("a table");
+    let files = Files::Folder(folder.path().into());
+    let table = data("stations", &declared, &files, &mut faults).expect("a table");
     BTreeMap::from([("stations".to_string(), Arc::new(table))])
 }
 

@@ -1,7 +1,7 @@
 //! Data files, whole and broken, as a section `[data.t]` reads them.
 
 use crate::place::{Fault, Faults, Source};
-use crate::reading::{Cells, Section, Table, data, parse};
+use crate::reading::{Cells, Files, Section, Table, data, parse};
 use proptest::prelude::*;
 use std::fs;
 use std::sync::Arc;
@@ -18,7 +18,8 @@ fn read(section: &str, bytes: &[u8]) -> Result<Table, Vec<Fault>> {
     let root = parse(&source, &mut faults);
     let named = root.section("data", &mut faults).expect("a table");
     let section: Section = named.section("t", &mut faults).expect("a table");
-    let table = data("t", &section, folder.path(), &mut faults);
+    let files = Files::Folder(folder.path().into());
+    let table = data("t", &section, &files, &mut faults);
     match table {
         Some(table) if faults.is_empty() => Ok(table),
         _ => Err(faults.sorted()),

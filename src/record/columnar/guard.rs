@@ -99,10 +99,10 @@ impl Walk<'_> {
         }
     }
 
-    /// The 32-bit fields of a structure that has no others, each up to four, and a structure of such where
-    /// `inner` is.
-    fn numbers(&mut self, inner: Option<i64>) -> Option<[i64; 16]> {
-        let mut fields = [i64::MIN; 16];
+    /// The fields of a structure that has none but 32-bit numbers, and where `inner` says so one such structure,
+    /// whose fields follow from place 16.
+    fn numbers(&mut self, inner: Option<i64>) -> Option<[i64; 32]> {
+        let mut fields = [i64::MIN; 32];
         let mut last = 0;
         loop {
             let head = self.byte()?;
@@ -113,10 +113,12 @@ impl Walk<'_> {
                 0 => self.zigzag()?,
                 step => last + i64::from(step),
             };
+            let place = usize::try_from(last).ok().filter(|place| *place < 16)?;
             match head & 0x0f {
-                5 => *fields.get_mut(usize::try_from(last).ok()?)? = self.zigzag()?,
+                5 => fields[place] = self.zigzag()?,
                 12 if inner == Some(last) => {
-                    self.numbers(None)?;
+                    let own = self.numbers(None)?;
+                    fields[16..].copy_from_slice(&own[..16]);
                 }
                 _ => return None,
             }
@@ -138,6 +140,7 @@ pub fn pages(bytes: &[u8], most: u64, all: u64) -> bool {
     const UNPACKED: usize = 2;
     const PACKED: usize = 3;
     const DATA: i64 = 5;
+    const ENCODING: usize = 16 + 2;
     let mut walk = Walk { bytes, at: 0 };
     let mut sum = 0;
     while walk.at < bytes.len() {
@@ -151,7 +154,8 @@ pub fn pages(bytes: &[u8], most: u64, all: u64) -> bool {
             return false;
         };
         sum += unpacked.min(all + 1);
-        let honest = fields[KIND] == 0 && unpacked <= most && sum <= all;
+        let plain = fields[KIND] == 0 && fields[ENCODING] == 0;
+        let honest = plain && unpacked <= most && sum <= all;
         if !honest || walk.skip(packed).is_none() {
             return false;
         }
