@@ -28,5 +28,6 @@ pub mod plan;
 pub mod random;
 pub mod reading;
 pub mod record;
+pub mod replay;
 pub mod report;
 pub mod study;

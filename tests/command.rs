@@ -234,7 +234,7 @@ fn a_finished_run_whose_files_changed_is_4_and_tells_no_figures() {
         }
     };
     let listed = files(&done.join("data"));
-    assert_eq!(listed.len(), 7, "{listed:?}");
+    assert_eq!(listed.len(), 13, "{listed:?}");
     for path in &listed {
         let kept = fs::read(path).unwrap();
         let mut flipped = kept.clone();
@@ -242,14 +242,16 @@ fn a_finished_run_whose_files_changed_is_4_and_tells_no_figures() {
         flipped[middle] ^= 1;
         fs::write(path, flipped).unwrap();
         let name = path.strip_prefix(&done).unwrap().to_str().unwrap();
-        refused(&format!("{name} is not as it was when the run ended"));
+        refused(&format!(
+            "{name} is not as it was when the record was sealed"
+        ));
         fs::write(path, kept).unwrap();
     }
     fs::write(done.join("data/inputs/more.csv"), "x\n").unwrap();
-    refused("data/inputs/more.csv was not there");
+    refused("data/inputs/more.csv is in no list of the record");
     fs::remove_file(done.join("data/inputs/more.csv")).unwrap();
     fs::rename(done.join("data/plan.json"), here.join("aside")).unwrap();
-    refused("data/plan.json was there");
+    refused("data/plan.json is listed, and is not there");
     fs::rename(here.join("aside"), done.join("data/plan.json")).unwrap();
     let again = run();
     assert_eq!(status(&again), 0, "{}", text(&again.stderr));

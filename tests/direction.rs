@@ -5,7 +5,7 @@ use std::fs;
 use std::path::{Path, PathBuf};
 
 /// The rooms in their order; each may import from those before it.
-const ROOMS: [&str; 18] = [
+const ROOMS: [&str; 19] = [
     "place",
     "canon",
     "maths",
@@ -23,6 +23,7 @@ const ROOMS: [&str; 18] = [
     "engine",
     "report",
     "record",
+    "replay",
     "cli",
 ];
 

@@ -105,56 +105,26 @@ fn folder_of(into: &Path) -> PathBuf {
     found.remove(0)
 }
 
-/// What must come out the same.
-#[derive(PartialEq)]
-struct Bits {
-    /// Files of the payload.
-    files: BTreeMap<String, Vec<u8>>,
-    /// Frames of the journal by point, chain and number; threads decide their order in the file.
-    frames: BTreeMap<Vec<u8>, Vec<u8>>,
-}
-
-fn bits(into: &Path) -> Bits {
-    let folder = folder_of(into);
-    assert_eq!(
-        folder.extension(),
-        None,
-        "not finished: {}",
-        folder.display()
-    );
+/// Every file of the payload, by its path: draws, trail, checkpoints and what is rendered from them. The crate's
+/// metadata tell times, which are no part of a result.
+fn bits(into: &Path) -> BTreeMap<PathBuf, Vec<u8>> {
+    let sealed = folder_of(into);
+    assert_eq!(sealed.extension(), None, "not sealed: {}", sealed.display());
     let mut files = BTreeMap::new();
-    for entry in fs::read_dir(folder.join("data")).expect("data") {
-        let path = entry.expect("an entry").path();
-        if path.is_file() {
-            let name = path
-                .file_name()
-                .expect("a name")
-                .to_string_lossy()
-                .into_owned();
-            files.insert(name, fs::read(&path).expect("a file"));
+    let mut folders = vec![sealed.join("data")];
+    while let Some(folder) = folders.pop() {
+        for entry in fs::read_dir(folder).expect("a folder") {
+            let path = entry.expect("an entry").path();
+            if path.is_dir() {
+                folders.push(path);
+            } else if !path.ends_with("ro-crate-metadata.json") {
+                let name = path.strip_prefix(&sealed).expect("in it").to_owned();
+                files.insert(name, fs::read(&path).expect("a file"));
+            }
         }
     }
-    let journal = fs::read(folder.join("journal")).expect("a journal");
-    Bits {
-        files,
-        frames: frames(&journal),
-    }
-}
-
-/// See `record/frame.rs` for the layout.
-fn frames(journal: &[u8]) -> BTreeMap<Vec<u8>, Vec<u8>> {
-    let mut frames = BTreeMap::new();
-    let mut at = 76;
-    while at < journal.len() {
-        let frame = &journal[at..];
-        let word = |at: usize| u32::from_le_bytes(frame[at..at + 4].try_into().unwrap()) as usize;
-        let size = 200 + word(24) * word(28) * 8 + word(32) + word(36);
-        let key = [&frame[4..12], &frame[16..24]].concat();
-        let before = frames.insert(key, frame[..size].to_vec());
-        assert!(before.is_none(), "a block stands twice");
-        at += size;
-    }
-    frames
+    assert!(files.len() > 8, "{:?}", files.keys());
+    files
 }
 
 /// Numbers for moments, from a fixed seed (Steele, Lea & Flood 2014).

@@ -33,6 +33,23 @@ pub enum Command {
         #[arg(long)]
         json: bool,
     },
+    /// Hold a record against its own study: files, plan, draws, figures, pages, and the draws drawn again
+    Verify {
+        /// The folder of a sealed record
+        record: PathBuf,
+        /// Draw only this part of the blocks again, chosen by lot: 5% [default: all]
+        #[arg(long, value_name = "PART", value_parser = super::verify::part)]
+        blocks: Option<f64>,
+        /// Words that decide the lot [default: the operating system's randomness]
+        #[arg(long, value_name = "WORDS", requires = "blocks")]
+        seed: Option<String>,
+        /// Threads to work on [default: all that the machine offers]
+        #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=4096))]
+        threads: Option<u16>,
+        /// Print the account as JSON on stdout
+        #[arg(long)]
+        json: bool,
+    },
     /// List the laws, functions and methods that a study may use
     Catalogue {
         /// Only one of the lists

@@ -13,6 +13,7 @@ mod run;
 mod signals;
 mod status;
 mod study;
+mod verify;
 
 pub use own_fault::watch as watch_own_faults;
 pub use registry::FAMILIES;
@@ -43,6 +44,13 @@ pub fn run(arguments: impl Iterator<Item = std::ffi::OsString>) -> u8 {
             threads,
             json,
         } => run::run(&study, &into, threads, json),
+        Command::Verify {
+            record,
+            blocks,
+            seed,
+            threads,
+            json,
+        } => verify::verify(&record, blocks, seed.as_deref(), threads, json),
         Command::Catalogue { list } => catalogue::catalogue(list),
     };
     status.code()

@@ -70,7 +70,7 @@ fn carry_out(file: &Path, into: &Path, threads: Option<u16>) -> Result<Filed, St
     clippy::disallowed_methods,
     reason = "the number of threads, where none is given"
 )]
-fn all_threads() -> usize {
+pub fn all_threads() -> usize {
     std::thread::available_parallelism().map_or(1, NonZeroUsize::get)
 }
 

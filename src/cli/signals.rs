@@ -7,6 +7,11 @@ use std::sync::atomic::{AtomicBool, Ordering};
 /// Set by the first signal.
 pub static STOP: AtomicBool = AtomicBool::new(false);
 
+/// Whether a signal came.
+pub fn stopped() -> bool {
+    STOP.load(Ordering::Relaxed)
+}
+
 /// Puts the handler in place. Where that is not possible a signal ends the program at once; the journal
 /// stands that too.
 pub fn watch() {

@@ -12,6 +12,7 @@
 //! judged; so all chains of a point stop at the same draw, whatever the threads and lanes.
 
 mod active;
+mod blocks;
 mod columns;
 mod conduct;
 mod halt;
@@ -28,6 +29,7 @@ pub(crate) mod toy;
 pub mod trail;
 mod walk;
 
+pub use blocks::{blocks, burn_in_reviews};
 pub use columns::{Columns, Ledger};
 pub use conduct::{Ended, Orders, PointEnd, conduct};
 pub use halt::Halt;

@@ -88,13 +88,28 @@ pub fn next_link(
 
 /// The bytes of a block's values that are hashed and kept: little-endian doubles, every NaN the same.
 pub fn payload(block: &Block) -> Vec<u8> {
-    const NAN: u64 = 0x7ff8_0000_0000_0000;
     let mut bytes = vec![0; block.values.len() * 8];
     for (place, value) in bytes.chunks_exact_mut(8).zip(&block.values) {
-        let bits = if value.is_nan() { NAN } else { value.to_bits() };
-        place.copy_from_slice(&bits.to_le_bytes());
+        place.copy_from_slice(&bits(*value).to_le_bytes());
     }
     bytes
+}
+
+/// Hashes values as [`payload`] would have them.
+pub fn hash_values(hash: &mut Sha256, values: &[f64]) {
+    let mut bytes = [0; 8 * 512];
+    for values in values.chunks(512) {
+        for (place, value) in bytes.chunks_exact_mut(8).zip(values) {
+            place.copy_from_slice(&bits(*value).to_le_bytes());
+        }
+        hash.update(&bytes[..8 * values.len()]);
+    }
+}
+
+/// The bits of a value, every NaN the same.
+fn bits(value: f64) -> u64 {
+    const NAN: u64 = 0x7ff8_0000_0000_0000;
+    if value.is_nan() { NAN } else { value.to_bits() }
 }
 
 /// The values back from their bytes.

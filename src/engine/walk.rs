@@ -1,6 +1,7 @@
 //! One course under way: advances its chains block by block, hashes and links what they did, and holds
 //! recomputed blocks against those that stand.
 
+use super::blocks::block_end;
 use super::halt::Halt;
 use super::sink::{Finished, Mark, Reader, Stood};
 use super::task::Task;
@@ -261,12 +262,6 @@ impl Lane {
             kept,
         })
     }
-}
-
-/// Where the next block ends: at the next multiple of the block length, or at the target before it.
-fn block_end(done: u64, target: u64, block: u64) -> u64 {
-    let end = (done / block + 1) * block;
-    if end < target { end } else { target }
 }
 
 /// The links of standing blocks must follow from the chain's own start.

@@ -4,7 +4,7 @@
 //! |---|---|
 //! | stream key | model, data, sampler, start, burn-in, `every`, block rule, swept values (with shared streams: the study without them), root, chain index |
 //! | chain key | stream key, swept values, `NUMERICS.draws`; with shared streams also the point's own model, data, sampler, start, burn-in, `every`; with a self-chosen burn-in also the number of chains and the estimands |
-//! | plan digest | all chain keys, draws, goal, estimands, predictions, block lengths, `keep`, accepted grounds, title, question, `NUMERICS.estimates` |
+//! | plan digest | all chain keys, draws, goal, estimands, predictions, block lengths, `keep`, accepted grounds, title, question, `NUMERICS.estimates`, where an interrupted run was closed |
 //!
 //! A self-chosen burn-in ends when R-hat of the recorded quantities over all chains is small, so the draws
 //! after it do depend on how many chains there are and on what is recorded; without that, two chains of one
@@ -33,7 +33,7 @@ impl Plan {
             ("content", self.content(point)),
             ("values", values(&self.points[point])),
             ("root", Json::text(&*self.root)),
-            ("numerics_draws", Json::Count(NUMERICS.draws)),
+            ("numerics_draws", Json::Count(self.numerics.draws)),
         ];
         covered.extend(self.own(point));
         tagged("odograph point key", &Json::object(covered))
@@ -57,15 +57,18 @@ impl Plan {
                 ("units", point.units_json()),
             ])
         });
-        let covered = Json::object([
+        let mut covered = vec![
             ("title", Json::text(&*self.title)),
             ("question", Json::text(&*self.question)),
             ("keep", self.keep_json()),
             ("accepted", self.accepted_json()),
-            ("numerics_estimates", Json::Count(NUMERICS.estimates)),
+            ("numerics_estimates", Json::Count(self.numerics.estimates)),
             ("points", Json::array(points)),
-        ]);
-        tagged("odograph plan digest", &covered)
+        ];
+        if self.closed.is_some() {
+            covered.push(("closed", self.closed_json()));
+        }
+        tagged("odograph plan digest", &Json::object(covered))
     }
 
     /// [`Plan::stream_key`] of several chains of a point.
@@ -105,7 +108,7 @@ impl Plan {
                 ("stream", Json::text(hex(stream))),
                 ("values", values(point)),
                 ("together", together.clone()),
-                ("numerics_draws", Json::Count(NUMERICS.draws)),
+                ("numerics_draws", Json::Count(self.numerics.draws)),
             ];
             covered.extend(own.clone());
             tagged("odograph chain key", &Json::object(covered))

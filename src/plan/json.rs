@@ -43,14 +43,15 @@ impl Plan {
             (
                 "numerics",
                 Json::object([
-                    ("draws", Json::Count(NUMERICS.draws)),
-                    ("estimates", Json::Count(NUMERICS.estimates)),
+                    ("draws", Json::Count(self.numerics.draws)),
+                    ("estimates", Json::Count(self.numerics.estimates)),
                 ]),
             ),
             ("plan_digest", Json::text(hex(&self.digest()))),
             ("title", Json::text(&*self.title)),
             ("question", Json::text(&*self.question)),
             ("root", Json::text(&*self.root)),
+            ("closed", self.closed_json()),
             ("keep", self.keep_json()),
             ("checkpoint_bytes", Json::Count(CHECKPOINT_BYTES)),
             ("accepted", self.accepted_json()),
@@ -78,6 +79,21 @@ impl Plan {
             ("base", base),
             ("points", points),
         ])
+    }
+
+    /// Where an interrupted run was closed.
+    pub(super) fn closed_json(&self) -> Json {
+        let point = |lengths: &Option<(u64, u64)>| match lengths {
+            None => Json::Null,
+            Some((burn_in, draws)) => Json::object([
+                ("burn_in", Json::Count(*burn_in)),
+                ("draws", Json::Count(*draws)),
+            ]),
+        };
+        match &self.closed {
+            None => Json::Null,
+            Some(points) => Json::array(points.iter().map(point)),
+        }
     }
 
     pub(super) fn keep_json(&self) -> Json {

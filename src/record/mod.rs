@@ -1,10 +1,10 @@
 //! The folder that a run leaves: its lock and journal while it is worked on, the record when it is sealed.
 
 mod bag;
-mod checkpoints;
+pub mod checkpoints;
 mod circumstances;
 mod columnar;
-mod draws_file;
+pub mod draws_file;
 mod fault;
 mod folder;
 mod frame;
@@ -16,7 +16,7 @@ mod room;
 mod scan;
 mod seal;
 mod sync;
-mod trail_file;
+pub mod trail_file;
 
 pub use bag::check as check_bag;
 pub use checkpoints::Checkpoints;
@@ -24,9 +24,8 @@ pub use circumstances::Circumstances;
 pub use draws_file::DrawsFile;
 pub use fault::RecordFault;
 pub use folder::{Entry, Folder, Open, read};
-pub use inputs::keep as keep_inputs;
+pub use inputs::{keep as keep_inputs, kept};
 pub use journal::JournalFile;
 pub use room::{Needs, check as check_room, needs, size};
 pub use scan::Cut;
 pub use seal::{Sealing, seal, starts};
-pub use trail_file::TrailRow;

@@ -19,7 +19,7 @@ pub use csv::summary_csv;
 pub use figures::figures_text;
 pub use grounds_text::grounds_text;
 pub use json::{grounds_json, summary_json};
-pub use outcome::{Outcome, grounds_of};
+pub use outcome::{CLOSED_BEFORE, Outcome, grounds_of};
 pub use page::report_html;
 pub use sweep::sweep_text;
 pub use text::{FOOT, run_text};

@@ -6,13 +6,16 @@ use crate::engine::trail::Digest;
 use crate::engine::{PointEnd, Reviewed, summary};
 use crate::estimates::{Paired, Summary};
 use crate::grounds::{Grounds, grounds};
-use crate::plan::{NUMERICS, Plan};
+use crate::plan::Plan;
 
 /// The grounds of a point of a plan, with what its draws add once it has run.
 pub fn grounds_of(plan: &Plan, point: usize, summary: Option<&Summary>) -> Grounds {
     let conditions = plan.points[point].model.conditions();
     grounds(&conditions, summary, &plan.accepted)
 }
+
+/// Why a point of a closed run has no figures.
+pub const CLOSED_BEFORE: &str = "the run was closed before this point had draws";
 
 /// What a run came to. The same plan and draws give the same outcome on every machine.
 #[derive(Debug, Clone)]
@@ -27,6 +30,17 @@ pub struct Outcome<'a> {
 }
 
 impl<'a> Outcome<'a> {
+    /// Every name that [`Outcome::files`] may give.
+    pub const FILES: [&'static str; 7] = [
+        "data/plan.json",
+        "data/summary.json",
+        "data/summary.csv",
+        "data/summary.txt",
+        "data/grounds.json",
+        "data/report.html",
+        "data/failed.json",
+    ];
+
     /// From the ends of all points, in the order of the points, and for each its differences from the first.
     pub fn of(
         plan: &'a Plan,
@@ -89,7 +103,7 @@ impl<'a> Outcome<'a> {
     fn summary(&self, result: Option<&str>) -> Json {
         let summaries: Vec<Summary> = self.points.iter().map(|(s, _)| s.clone()).collect();
         let digest = canon::hex(&self.plan.digest());
-        summary_json(NUMERICS, &digest, result, &summaries)
+        summary_json(self.plan.numerics, &digest, result, &summaries)
     }
 
     /// The files rendered from plan and outcome alone, by their names in a record.

@@ -2,7 +2,7 @@
 
 use crate::course::Family;
 use crate::place::{Fault, Faults, Place, Source};
-use crate::plan::{Plan, Point, Streams};
+use crate::plan::{NUMERICS, Plan, Point, Streams};
 use crate::reading::{self, Files, LARGEST_STUDY, Section};
 use crate::study::frame::Frame;
 use crate::study::point::{Surroundings, resolve_point};
@@ -80,6 +80,8 @@ pub fn resolve_text(
         keep: frame.keep,
         accepted: frame.accepted,
         inputs: surroundings.inputs,
+        numerics: NUMERICS,
+        closed: None,
     })
 }
 

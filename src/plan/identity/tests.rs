@@ -97,6 +97,8 @@ fn plan() -> Plan {
         keep: Keep::Draws,
         accepted: Accepted::default(),
         inputs: Vec::new(),
+        numerics: NUMERICS,
+        closed: None,
     }
 }
 

@@ -1,0 +1,20 @@
+//! Verifying a record: nothing in it is believed that can be made again.
+//!
+//! - [`verify`] goes through the parts (a) to (f) and gives an [`Account`] of what was checked, what differs, and
+//!   what that shows;
+//! - [`fresh`] runs the plan of a record again under a root drawn now, and compares every estimate.
+
+mod account;
+mod again;
+mod bag;
+mod blocks;
+mod difference;
+mod draws;
+mod figures;
+mod lot;
+mod opened;
+mod verify;
+
+pub use account::{Account, Finding, Part, Standing};
+pub use lot::{Audit, Chance};
+pub use verify::{Request, verify};
