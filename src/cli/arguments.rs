@@ -40,8 +40,12 @@ pub enum Command {
         /// Draw only this part of the blocks again, chosen by lot: 5% [default: all]
         #[arg(long, value_name = "PART", value_parser = super::verify::part)]
         blocks: Option<f64>,
-        /// Words that decide the lot [default: the operating system's randomness]
-        #[arg(long, value_name = "WORDS", requires = "blocks")]
+        /// Also run the plan again under so many roots drawn now, and compare every estimate
+        #[arg(long, value_name = "RUNS", num_args = 0..=1, default_missing_value = "1",
+              value_parser = clap::value_parser!(u32).range(1..=1000))]
+        fresh: Option<u32>,
+        /// Words that decide the lot and the fresh roots [default: the operating system's randomness]
+        #[arg(long, value_name = "WORDS")]
         seed: Option<String>,
         /// Threads to work on [default: all that the machine offers]
         #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=4096))]

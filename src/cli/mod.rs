@@ -47,10 +47,20 @@ pub fn run(arguments: impl Iterator<Item = std::ffi::OsString>) -> u8 {
         Command::Verify {
             record,
             blocks,
+            fresh,
             seed,
             threads,
             json,
-        } => verify::verify(&record, blocks, seed.as_deref(), threads, json),
+        } => {
+            let ask = verify::Ask {
+                blocks,
+                fresh,
+                seed: seed.as_deref(),
+                threads,
+                json,
+            };
+            verify::verify(&record, &ask)
+        }
         Command::Catalogue { list } => catalogue::catalogue(list),
     };
     status.code()

@@ -6,7 +6,8 @@ use super::run::all_threads;
 use super::signals;
 use super::status::Status;
 use crate::canon::{self, Json};
-use crate::replay::{self, Account, Audit, Part, Request, Standing};
+use crate::estimates::figure;
+use crate::replay::{self, Account, Audit, Beside, Fresh, LEVEL, Part, Request, Standing};
 use std::fmt::Write as _;
 use std::path::Path;
 
@@ -21,43 +22,57 @@ pub fn part(text: &str) -> Result<f64, String> {
         .ok_or_else(|| "a part of the blocks such as 5% or 0.05, above 0 and at most 1".into())
 }
 
+/// What is asked of a verification.
+pub struct Ask<'a> {
+    pub blocks: Option<f64>,
+    pub fresh: Option<u32>,
+    pub seed: Option<&'a str>,
+    pub threads: Option<u16>,
+    pub json: bool,
+}
+
 /// Verifies a record and says what was checked, and what that shows.
-pub fn verify(
-    record: &Path,
-    blocks: Option<f64>,
-    seed: Option<&str>,
-    threads: Option<u16>,
-    json: bool,
-) -> Status {
+pub fn verify(record: &Path, ask: &Ask<'_>) -> Status {
     if !record.is_dir() {
         tell(&format!("{} is no folder of a record", record.display()));
         return Status::Fault;
     }
-    let audit = match blocks {
-        None => Audit::All,
-        Some(part) => match seed_of(seed) {
-            Ok(seed) => Audit::Part { part, seed },
-            Err(words) => {
-                tell(&words);
-                return Status::Interrupted;
-            }
-        },
+    let seed = match seed_of(ask.seed) {
+        Ok(seed) => seed,
+        Err(words) => {
+            tell(&words);
+            return Status::Interrupted;
+        }
     };
     signals::watch();
-    let account = replay::verify(
-        record,
-        &Request {
-            registry: &FAMILIES,
-            threads: threads.map_or_else(all_threads, usize::from),
-            audit,
-            stop: &signals::STOP,
-            progress: &|part| tell(&format!("checking {part}")),
-        },
-    );
-    let text = if json {
-        account_json(&account).pretty()
+    let request = Request {
+        registry: &FAMILIES,
+        threads: ask.threads.map_or_else(all_threads, usize::from),
+        audit: ask
+            .blocks
+            .map_or(Audit::All, |part| Audit::Part { part, seed }),
+        stop: &signals::STOP,
+        progress: &|part| tell(&format!("checking {part}")),
+    };
+    let account = replay::verify(record, &request);
+    let fresh = match ask.fresh {
+        // Figures that do not follow from their own study need no comparison.
+        Some(runs) if account.agrees() => {
+            match replay::fresh(record, &request, replay::roots(&seed, runs)) {
+                Ok(fresh) => Some(fresh),
+                Err(words) => {
+                    tell(&format!("no fresh run: {words}"));
+                    return Status::Interrupted;
+                }
+            }
+        }
+        _ => None,
+    };
+    let text = if ask.json {
+        account_json(&account, fresh.as_ref()).pretty()
     } else {
-        account_text(record, &account)
+        let fresh = fresh.as_ref().map_or(String::new(), fresh_text);
+        account_text(record, &account) + &fresh
     };
     if let Err(fault) = say(&text) {
         tell(&format!("the account cannot be written: {fault}"));
@@ -69,6 +84,8 @@ pub fn verify(
         Status::Broken
     } else if account.unchecked() {
         Status::Unchecked
+    } else if fresh.is_some_and(|fresh| fresh.differs()) {
+        Status::Found
     } else {
         Status::Done
     }
@@ -150,7 +167,76 @@ fn conclusion(account: &Account) -> String {
     )
 }
 
-fn account_json(account: &Account) -> Json {
+/// Estimates shown of a fresh comparison, those furthest apart first.
+const SHOWN: usize = 12;
+
+fn fresh_text(fresh: &Fresh) -> String {
+    let mut text = format!(
+        "\nFresh runs: {} under roots drawn now; {} estimates compared",
+        fresh.roots.len(),
+        fresh.estimates.len()
+    );
+    if fresh.without_error > 0 {
+        let _ = write!(text, ", {} without an error left out", fresh.without_error);
+    }
+    text.push_str(".\n");
+    let mut order: Vec<&Beside> = fresh.estimates.iter().collect();
+    order.sort_by(|a, b| b.z().abs().total_cmp(&a.z().abs()));
+    for one in order.iter().take(SHOWN) {
+        let point = match fresh.estimates.iter().any(|other| other.point > 0) {
+            true => format!("point {}, ", one.point + 1),
+            false => String::new(),
+        };
+        let _ = writeln!(
+            text,
+            "    {point}{}: record {}, fresh {}; apart by {:.2} of the error of the difference",
+            one.name,
+            figure(Some(one.recorded.0), Some(one.recorded.1)),
+            figure(Some(one.fresh.0), Some(one.fresh.1)),
+            one.z()
+        );
+    }
+    let joint = fresh.joint();
+    let said = if fresh.differs() {
+        "The record differs from fresh runs of its own plan by more than chance: its root may have been chosen."
+    } else {
+        "The record agrees with fresh runs of its own plan."
+    };
+    let _ = writeln!(
+        text,
+        "Chance alone sets all of them this far apart with probability {joint:.3} (level {LEVEL}).\n{said}"
+    );
+    text
+}
+
+fn fresh_json(fresh: &Fresh) -> Json {
+    let estimate = |one: &Beside| {
+        let pair = |(value, error): (f64, f64)| Json::array([Json::real(value), Json::real(error)]);
+        Json::object([
+            ("point", Json::Count(one.point as u64 + 1)),
+            ("name", Json::text(one.name.clone())),
+            ("recorded", pair(one.recorded)),
+            ("fresh", pair(one.fresh)),
+            ("z", Json::real(one.z())),
+        ])
+    };
+    Json::object([
+        (
+            "roots",
+            Json::array(fresh.roots.iter().map(|root| Json::text(root.clone()))),
+        ),
+        ("joint_probability", Json::real(fresh.joint())),
+        ("level", Json::real(LEVEL)),
+        ("differs", Json::Bool(fresh.differs())),
+        ("without_error", Json::Count(fresh.without_error as u64)),
+        (
+            "estimates",
+            Json::array(fresh.estimates.iter().map(estimate)),
+        ),
+    ])
+}
+
+fn account_json(account: &Account, fresh: Option<&Fresh>) -> Json {
     let part = |(part, standing): &(Part, Standing)| {
         let (word, words) = match standing {
             Standing::Agrees(words) => ("agrees", Json::text(words.clone())),
@@ -190,6 +276,7 @@ fn account_json(account: &Account) -> Json {
         ("result_digest", Json::text(account.result_digest.clone())),
         ("parts", Json::array(account.parts.iter().map(part))),
         ("chance", chance),
+        ("fresh", fresh.map_or(Json::Null, fresh_json)),
         ("replay_seconds", Json::real(account.replay_seconds)),
     ])
 }

@@ -11,10 +11,12 @@ mod blocks;
 mod difference;
 mod draws;
 mod figures;
+mod fresh;
 mod lot;
 mod opened;
 mod verify;
 
 pub use account::{Account, Finding, Part, Standing};
+pub use fresh::{Beside, Fresh, LEVEL, fresh, roots};
 pub use lot::{Audit, Chance};
 pub use verify::{Request, verify};
