@@ -37,7 +37,6 @@ mod half_cauchy;
 mod half_normal;
 mod inverse_gamma;
 mod laplace;
-mod log_flat;
 mod logistic;
 mod lognormal;
 mod negative_binomial;
@@ -64,7 +63,7 @@ static TABLE: [&dyn Law; 31] = [
     &exponential::ByRate,
     &exponential::ByMean,
     &flat::Flat,
-    &flat_positive::FlatPositive,
+    &flat_positive::FLAT_POSITIVE,
     &gamma::ByRate,
     &gamma::ByScale,
     &gamma::ByMoments,
@@ -74,7 +73,7 @@ static TABLE: [&dyn Law; 31] = [
     &half_normal::HalfNormal,
     &inverse_gamma::InverseGamma,
     &laplace::Laplace,
-    &log_flat::LogFlat,
+    &flat_positive::LOG_FLAT,
     &logistic::Logistic,
     &lognormal::Lognormal,
     &negative_binomial::ByMean,

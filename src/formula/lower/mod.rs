@@ -118,36 +118,43 @@ impl Lowering<'_> {
 
     /// A value that must be numbers.
     pub fn numbers(&mut self, expr: &Expr) -> Option<Term> {
-        let term = self.term(expr)?;
-        if term.kind == Kind::Condition {
-            self.fault(
-                Fault::at(
-                    expr.place.clone(),
-                    format!("`{expr}` is a condition, not a number"),
-                )
+        self.of_kind(expr, Kind::Number, |fault| {
+            fault
                 .label("true or false")
-                .help(format!("write `if({expr}, 1, 0)` for a number")),
-            );
-            return None;
-        }
-        Some(term)
+                .help(format!("write `if({expr}, 1, 0)` for a number"))
+        })
     }
 
     /// A value that must be a condition.
     fn condition(&mut self, expr: &Expr) -> Option<Term> {
-        let term = self.term(expr)?;
-        if term.kind == Kind::Number {
-            self.fault(
-                Fault::at(
-                    expr.place.clone(),
-                    format!("`{expr}` is a number, not a condition"),
-                )
+        self.of_kind(expr, Kind::Condition, |fault| {
+            fault
                 .label("a condition is needed")
-                .help(format!("compare it with something: `{expr} > 0`")),
-            );
-            return None;
+                .help(format!("compare it with something: `{expr} > 0`"))
+        })
+    }
+
+    /// A value of one kind; of the other, a fault with what `remedy` adds to it.
+    fn of_kind(
+        &mut self,
+        expr: &Expr,
+        kind: Kind,
+        remedy: impl FnOnce(Fault) -> Fault,
+    ) -> Option<Term> {
+        let term = self.term(expr)?;
+        if term.kind == kind {
+            return Some(term);
         }
-        Some(term)
+        let (is, wanted) = match kind {
+            Kind::Number => ("a condition", "a number"),
+            Kind::Condition => ("a number", "a condition"),
+        };
+        let fault = Fault::at(
+            expr.place.clone(),
+            format!("`{expr}` is {is}, not {wanted}"),
+        );
+        self.fault(remedy(fault));
+        None
     }
 
     fn name(&mut self, name: &str, place: &Place) -> Option<Term> {
