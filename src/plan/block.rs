@@ -6,7 +6,10 @@ use crate::plan::{Ensemble, Goal};
 /// operation, a tenth of a second).
 const OPERATIONS: f64 = 1e8;
 const SHORTEST: u64 = 100;
+/// So long only where a state takes much room: it is by blocks that a run is audited, and a long run should have
+/// hundreds of them.
 const LONGEST: u64 = SHORTEST << 10;
+const LONGEST_BY_COST: u64 = SHORTEST << 6;
 /// Blocks at least, up to the first review, so that a run interrupted before it loses little.
 const BEFORE_FIRST_REVIEW: u64 = 8;
 /// A saved state may be this part of the bytes of the draws beside it.
@@ -19,14 +22,14 @@ const MOST_BYTES: u64 = 32 << 20;
 /// Draws in a block, for a draw of `cost` operations and `quantities` recorded values, a saved state of
 /// `state_size` bytes, and a first review after `draws` draws.
 ///
-/// The tenth of a second decides, within 100 to 102,400 draws; then at least 8 blocks up to the first
+/// The tenth of a second decides, within 100 to 6,400 draws; then at least 8 blocks up to the first
 /// review, where blocks of 100 draws allow it; then long enough that states take little room beside draws.
 /// It is 100 times a power of two, so that small changes of a study leave its blocks as they are, but never
 /// more than the draws up to the first review, nor more than 32 MB of draws, down to a power of two under 100 where
 /// very many quantities are recorded.
 pub fn block_length(cost: f64, quantities: usize, state_size: usize, draws: u64) -> u64 {
     let by_cost = OPERATIONS / if cost > 1.0 { cost } else { 1.0 };
-    let mut length = whole(by_cost).clamp(SHORTEST, LONGEST);
+    let mut length = whole(by_cost).clamp(SHORTEST, LONGEST_BY_COST);
     let by_review = (draws / BEFORE_FIRST_REVIEW).max(SHORTEST);
     length = length.min(by_review);
     let draw_bytes = 8.0 * quantities.max(1) as f64;
@@ -80,10 +83,10 @@ mod tests {
 
     #[test]
     fn blocks_of_a_tenth_of_a_second() {
-        // A draw of 10 µs and a first review far off: the cost decides.
-        assert_eq!(block_length(1e4, 10, 200, 1_000_000), 6400);
+        // A draw of 100 µs and a first review far off: the cost decides.
+        assert_eq!(block_length(1e5, 10, 200, 1_000_000), 800);
         // Cheap draws: the longest block; the first review after 8 blocks.
-        assert_eq!(block_length(100.0, 10, 200, 10_000_000), 102_400);
+        assert_eq!(block_length(100.0, 10, 200, 10_000_000), 6400);
         assert_eq!(block_length(100.0, 10, 200, 4000), 400);
         // Dear draws: the shortest, and never more than are asked for.
         assert_eq!(block_length(1e9, 10, 200, 4000), 100);
@@ -102,7 +105,7 @@ mod tests {
             (1_000_000, 0, 4),
             (10_000_000, 0, 1),
             // Cheap draws, and a large state: the bound holds against both.
-            (100, 0, 25_600),
+            (100, 1 << 40, 25_600),
             (10_000, 1 << 40, 400),
         ] {
             let found = block_length(100.0, quantities, state, 10_000_000);

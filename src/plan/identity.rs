@@ -5,6 +5,7 @@
 //! | stream key | model, data, sampler, start, burn-in, `every`, block rule, swept values (with shared streams: the study without them), root, chain index |
 //! | chain key | stream key, swept values, `NUMERICS.draws`; with shared streams also the point's own model, data, sampler, start, burn-in, `every`; with a self-chosen burn-in also the number of chains and the estimands |
 //! | plan digest | all chain keys, draws, goal, estimands, predictions, block lengths, `keep`, accepted grounds, title, question, `NUMERICS.estimates`, where an interrupted run was closed |
+//! | result digest | plan digest, last links of all trails, estimates, standings of all conditions, points without a start (`report::Outcome::digest`) |
 //!
 //! A self-chosen burn-in ends when R-hat of the recorded quantities over all chains is small, so the draws
 //! after it do depend on how many chains there are and on what is recorded; without that, two chains of one
@@ -162,4 +163,4 @@ fn values(point: &Point) -> Json {
 }
 
 #[cfg(test)]
-mod tests;
+pub(super) mod tests;

@@ -5,6 +5,9 @@ mod identity;
 mod json;
 mod types;
 
+#[cfg(test)]
+pub(crate) use identity::tests::plan as sample;
+
 pub use block::{block_length, reviews};
 pub use types::{
     Accepted, BurnIn, CHECKPOINT_BYTES, Combine, Data, Ensemble, Estimand, EstimandGoal, Give,

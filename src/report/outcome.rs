@@ -161,3 +161,74 @@ impl<'a> Outcome<'a> {
         Json::object([("points", Json::array(self.failed.iter().map(point)))])
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::super::samples;
+    use super::*;
+    use crate::course::Standing;
+    use crate::plan;
+
+    type Change = fn(&mut Outcome<'_>);
+
+    /// What moves the result digest.
+    const COVERED: &[(&str, Change)] = &[
+        ("link", |o| o.links[0][1] = [9; 32]),
+        ("value", |o| {
+            o.points[0].0.figures[0].estimate.value = Some(1.0)
+        }),
+        ("mcse", |o| o.points[0].0.figures[0].estimate.mcse = None),
+        ("quantile", |o| {
+            o.points[0].0.figures[0].estimate.quantiles[0].value = None
+        }),
+        ("draws", |o| o.points[0].0.draws_per_chain += 1),
+        ("burn-in", |o| o.points[0].0.burn_in += 1),
+        ("standing", |o| {
+            o.points[0].1.claims[0].conditions[0].standing = Standing::Failed
+        }),
+        ("failed", |o| o.failed[0].1 = "another reason".into()),
+        ("order", |o| o.points.swap(0, 1)),
+    ];
+
+    /// What does not: words for the reader.
+    const OUTSIDE: &[(&str, Change)] = &[
+        ("evidence", |o| {
+            o.points[0].1.claims[0].conditions[0].evidence = "x".into()
+        }),
+        ("advice", |o| o.points[0].0.advice = Some("x".into())),
+    ];
+
+    #[test]
+    fn the_result_digest_covers_what_its_table_says() {
+        let plan = plan::sample();
+        let mut points: Vec<(Summary, Grounds)> = samples::sweep()
+            .into_iter()
+            .map(|summary| (summary.clone(), samples::standings(&summary)))
+            .collect();
+        points.truncate(2);
+        let outcome = Outcome {
+            plan: &plan,
+            points,
+            failed: vec![(1, "no start".into())],
+            links: vec![vec![[1; 32], [2; 32]], Vec::new()],
+        };
+        let whole = outcome.digest();
+        for (what, change) in COVERED {
+            let mut changed = outcome.clone();
+            change(&mut changed);
+            assert_ne!(changed.digest(), whole, "{what}");
+        }
+        for (what, change) in OUTSIDE {
+            let mut changed = outcome.clone();
+            change(&mut changed);
+            assert_eq!(changed.digest(), whole, "{what}");
+        }
+        let mut other = plan::sample();
+        other.title = "U".into();
+        let other = Outcome {
+            plan: &other,
+            ..outcome
+        };
+        assert_ne!(other.digest(), whole);
+    }
+}

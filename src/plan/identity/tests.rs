@@ -81,7 +81,7 @@ fn point(value: f64) -> Point {
     }
 }
 
-fn plan() -> Plan {
+pub(crate) fn plan() -> Plan {
     Plan {
         title: "T".into(),
         question: "Q".into(),
@@ -135,6 +135,19 @@ const FIELDS: &[(&str, Change, [bool; 3], [bool; 3])] = &[
     (
         "accepted",
         |p| p.accepted.conditions.push("finite mass".into()),
+        PLAN,
+        PLAN,
+    ),
+    (
+        "closed",
+        |p| p.closed = Some(vec![None, Some((10, 50))]),
+        PLAN,
+        PLAN,
+    ),
+    ("numerics of draws", |p| p.numerics.draws += 1, CHAIN, CHAIN),
+    (
+        "numerics of estimates",
+        |p| p.numerics.estimates += 1,
         PLAN,
         PLAN,
     ),
