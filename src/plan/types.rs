@@ -47,10 +47,12 @@ pub struct Plan {
     pub inputs: Vec<Input>,
     /// [`NUMERICS`], but of a record made under another.
     pub numerics: Numerics,
-    /// Where an interrupted run was closed: draws a chain in burn-in and after it, for each point; `None` for a
-    /// point that had no draws yet. Left out, the plan is followed to its end.
-    pub closed: Option<Vec<Option<(u64, u64)>>>,
+    /// Where an interrupted run was closed; left out, the plan is followed to its end.
+    pub closed: Option<Closed>,
 }
+
+/// Draws a chain in burn-in and after it, for each point; `None` for a point that had no draws yet.
+pub type Closed = Vec<Option<(u64, u64)>>;
 
 /// A file that a study names: data or a start.
 #[derive(Debug, Clone, PartialEq, Eq)]

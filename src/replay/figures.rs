@@ -89,8 +89,8 @@ fn decide(
     }
     let verdict = judge.review(index, &kept.columns(0..trail.draws), stop)?;
     let last = reviews.last() == Some(&trail.draws);
-    let reviewed = reviews.contains(&trail.draws);
-    if !closed && !(last || reviewed && verdict.met != Some(false)) {
+    let met = reviews.contains(&trail.draws) && verdict.met == Some(true);
+    if !(closed || last || met) {
         return Err(format!(
             "it ends after {} draws, where the plan does not end it",
             trail.draws

@@ -4,7 +4,7 @@ use super::difference;
 use crate::canon::Json;
 use crate::course::Family;
 use crate::place::{Look, show};
-use crate::plan::{NUMERICS, Numerics, Plan};
+use crate::plan::{Closed, NUMERICS, Numerics, Plan};
 use crate::reading::{self, LARGEST_STUDY};
 use crate::record;
 use crate::study;
@@ -117,7 +117,7 @@ pub fn open(
 }
 
 /// Where the run was closed. It is a choice of whoever closed it, and no study says it.
-fn closed(plan: &Json, points: usize) -> Result<Option<Vec<Option<(u64, u64)>>>, String> {
+fn closed(plan: &Json, points: usize) -> Result<Option<Closed>, String> {
     let wrong = || "data/plan.json: `closed` cannot be read".to_owned();
     let length = |json: &Json| match json {
         Json::Null => Ok(None),
