@@ -349,3 +349,43 @@ fn shared_streams_tell_differences() {
         "{reason}"
     );
 }
+
+#[test]
+fn a_density_that_rises_without_bound_ends_in_3_with_words() {
+    for method in ["slice", "metropolis"] {
+        let study = STUDY
+            .replace("normal(mean = 0, sd = 1)", "flat()")
+            .replace("[sampler]", "[model.term]\nt = \"a^4\"\n[sampler]")
+            .replace("metropolis", method)
+            .replace("draws = 1000", "draws = 1000\nstart = { at = { a = 1 } }");
+        let (_folder, output) = with(&study, &["run", "one.toml"]);
+        assert_eq!(status(&output), 3, "{}", text(&output.stderr));
+        let said = text(&output.stdout);
+        let said = said.split_whitespace().collect::<Vec<_>>().join(" ");
+        assert!(said.contains("rises without bound"), "{said}");
+        assert!(said.contains("integrable failed"), "{said}");
+    }
+}
+
+#[test]
+fn chains_that_disagree_end_in_3() {
+    // Two modes that a short step does not join, two chains at each.
+    let study = STUDY
+        .replace("normal(mean = 0, sd = 1)", "flat()")
+        .replace(
+            "[sampler]",
+            "[model.term]\nt = \"-(a^2 - 100)^2 / 2\"\n[sampler]",
+        )
+        .replace(
+            "draws = 1000",
+            "draws = 1000\nstart = { file = \"starts.csv\" }",
+        );
+    let folder = tempfile::tempdir().unwrap();
+    fs::write(folder.path().join("one.toml"), study).unwrap();
+    fs::write(folder.path().join("starts.csv"), "a\n-10\n-10\n10\n10\n").unwrap();
+    let output = odograph(folder.path(), &["run", "one.toml"]);
+    assert_eq!(status(&output), 3, "{}", text(&output.stderr));
+    let said = text(&output.stdout);
+    let said = said.split_whitespace().collect::<Vec<_>>().join(" ");
+    assert!(said.contains("start forgotten failed"), "{said}");
+}

@@ -48,10 +48,15 @@ const REVERSIBLE: [&str; 2] = ["reversible", "second moment"];
 
 /// The grounds of a point: from what the model says, and, once it has run, from its summary.
 pub fn grounds(model: &[Condition], summary: Option<&Summary>, accepted: &Accepted) -> Grounds {
+    let limits: Vec<&str> = model
+        .iter()
+        .filter(|c| c.standing == Standing::NotKnown)
+        .map(|c| c.name)
+        .collect();
     let look = |name: &'static str| {
         let condition = said(model, name);
         match summary {
-            Some(summary) => weigh(condition, summary),
+            Some(summary) => weigh(condition, summary, &limits),
             None => condition,
         }
     };
@@ -292,6 +297,30 @@ mod tests {
             "b: chains disagree (R-hat 1.70): no error"
         );
         assert!(e.chains_disagree());
+    }
+
+    #[test]
+    fn chains_from_one_start_do_not_show_that_it_is_forgotten() {
+        let model = [
+            condition("irreducible", Standing::Assumed),
+            condition("start forgotten", Standing::NotKnown),
+            condition("integrable", Standing::NotKnown),
+        ];
+        let e = Estimate {
+            r_hat: Some(1.001),
+            tail_index: Some(0.1),
+            ..Estimate::default()
+        };
+        let g = grounds(&model, Some(&summary(e.clone())), &Accepted::default());
+        assert_eq!(standing(&g, 1, "start forgotten"), Standing::NotKnown);
+        assert_eq!(standing(&g, 0, "irreducible"), Standing::Assumed);
+        assert_eq!(standing(&g, 0, "integrable"), Standing::NotKnown);
+        let g = grounds(&model[..1], Some(&summary(e)), &Accepted::default());
+        assert_eq!(
+            standing(&g, 1, "start forgotten"),
+            Standing::NotContradicted
+        );
+        assert_eq!(standing(&g, 0, "integrable"), Standing::NotContradicted);
     }
 
     #[test]

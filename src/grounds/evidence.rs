@@ -1,6 +1,7 @@
 //! What the draws say about the conditions. Statistics never prove: each sentence says what it could not have
 //! seen.
 
+use super::condition::weaker;
 use crate::course::{Condition, Standing};
 use crate::estimates::{Figure, Note, Summary, r_hat_text};
 
@@ -8,8 +9,9 @@ use crate::estimates::{Figure, Note, Summary, r_hat_text};
 const MIXED: f64 = 1.05;
 
 /// Adds the evidence of a finished point to a condition. What was proved, holds by construction or has failed
-/// stays as it is.
-pub(super) fn weigh(condition: Condition, summary: &Summary) -> Condition {
+/// stays as it is. Conditions named in `limits` are those of which the model itself says that nothing can be known:
+/// draws may bring them down, never up.
+pub(super) fn weigh(condition: Condition, summary: &Summary, limits: &[&str]) -> Condition {
     if matches!(
         condition.standing,
         Standing::Proved | Standing::ByConstruction | Standing::Failed
@@ -17,6 +19,7 @@ pub(super) fn weigh(condition: Condition, summary: &Summary) -> Condition {
         return condition;
     }
     let found = match condition.name {
+        "finite mass" => run_away(summary),
         "irreducible" => reach(summary),
         "recurrent" => reach(summary).map(|(standing, words)| match standing {
             Standing::NotContradicted => (
@@ -33,6 +36,19 @@ pub(super) fn weigh(condition: Condition, summary: &Summary) -> Condition {
     let Some((standing, words)) = found else {
         return condition;
     };
+    let limited = limits.contains(&condition.name);
+    let one_start = limits.contains(&"start forgotten")
+        && matches!(condition.name, "irreducible" | "recurrent");
+    if one_start && standing == Standing::NotContradicted {
+        return condition;
+    }
+    if limited {
+        return Condition {
+            name: condition.name,
+            standing: weaker(condition.standing, standing),
+            evidence: format!("{}; {words}", condition.evidence),
+        };
+    }
     let evidence = match condition.standing {
         // "Nothing is known" is no longer so.
         Standing::NotKnown => words,
@@ -117,6 +133,22 @@ fn start(summary: &Summary) -> Option<(Standing, String)> {
     ))
 }
 
+/// No quantity has a number in every draw: so are draws recorded from chains that ran away.
+fn run_away(summary: &Summary) -> Option<(Standing, String)> {
+    all_without_number(summary).then(|| (Standing::NotKnown, RAN_AWAY.into()))
+}
+
+fn all_without_number(summary: &Summary) -> bool {
+    !summary.figures.is_empty()
+        && summary.figures.iter().all(|f| {
+            let mut notes = f.estimate.notes.iter();
+            notes.any(|n| matches!(n, Note::NotANumber { .. }))
+        })
+}
+
+const RAN_AWAY: &str = "no quantity has a number in every draw, as when chains run away: where the log density rises \
+                        without bound the target has no finite mass, and nothing can be drawn from it";
+
 /// A moment whose existence asks for a tail index under a bound.
 fn moment(summary: &Summary, bound: f64, what: &str) -> Option<(Standing, String)> {
     if let Some(figure) = summary.figures.iter().find(|f| {
@@ -125,10 +157,12 @@ fn moment(summary: &Summary, bound: f64, what: &str) -> Option<(Standing, String
             .iter()
             .any(|n| matches!(n, Note::Infinite { .. } | Note::NotANumber { .. }))
     }) {
-        return Some((
-            Standing::Failed,
-            format!("{}: some draws are infinite or not a number", figure.name),
-        ));
+        let words = format!("{}: some draws are infinite or not a number", figure.name);
+        let words = match all_without_number(summary) {
+            true => format!("{words}; {RAN_AWAY}"),
+            false => words,
+        };
+        return Some((Standing::Failed, words));
     }
     let Some((figure, index)) = largest(summary, |f| f.estimate.tail_index) else {
         let bounded = !summary.figures.is_empty() && summary.figures.iter().all(|f| f.condition);

@@ -184,6 +184,13 @@ impl Slice {
                 } else {
                     at.right = trial;
                 }
+                // Far out a width can be lost beside the point itself, and rounding leave an interval without
+                // it; one that overflowed never shrinks. The chain stays where it is.
+                let span = at.right - at.left;
+                if !(span > 0.0 && span.is_finite()) {
+                    walkers.position[row] = at.here;
+                    return self.end(lane, walkers, phase);
+                }
             }
         }
         self.ask(lane, walkers);

@@ -3,8 +3,9 @@
 use super::declared::Declared;
 use super::posterior::Posterior;
 use super::start::Start;
-use crate::course::{Condition, Standing};
+use crate::course::{Condition, EstimandSpec, Standing};
 use crate::methods::Sampler;
+use std::collections::BTreeMap;
 
 /// Conditions of the model, then those of the sampler.
 pub fn of(
@@ -12,11 +13,11 @@ pub fn of(
     posterior: &Posterior,
     sampler: &Sampler,
     start: &Start,
+    estimands: &[EstimandSpec],
 ) -> Vec<Condition> {
-    let mut conditions = vec![
-        finite_mass(declared, posterior),
-        irreducible(posterior, start),
-    ];
+    let mut conditions = vec![finite_mass(declared, posterior), irreducible(posterior)];
+    conditions.extend(one_start(posterior, start));
+    conditions.extend(super::ratio::means(declared, posterior, estimands));
     conditions.extend(sampler.conditions());
     conditions
 }
@@ -54,7 +55,7 @@ fn finite_mass(declared: &Declared, posterior: &Posterior) -> Condition {
     }
 }
 
-fn irreducible(posterior: &Posterior, start: &Start) -> Condition {
+fn irreducible(posterior: &Posterior) -> Condition {
     let integers = posterior.unknowns.iter().any(|unknown| unknown.integer);
     let evidence = if integers {
         "continuous moves reach every neighbourhood, integer moves every value, unless the density is 0 between parts of its support; a mode that no chain visited cannot be seen"
@@ -64,13 +65,25 @@ fn irreducible(posterior: &Posterior, start: &Start) -> Condition {
     Condition {
         name: "irreducible",
         standing: Standing::Assumed,
-        evidence: match start {
-            Start::At(stated) if stated.len() == posterior.unknowns.len() => {
-                format!(
-                    "{evidence}; all chains start at one point, so that they agree shows little"
-                )
-            }
-            _ => evidence.to_string(),
-        },
+        evidence: evidence.to_string(),
     }
+}
+
+/// Where every chain starts at the same point, that they agree cannot show that the start is forgotten.
+fn one_start(posterior: &Posterior, start: &Start) -> Option<Condition> {
+    let whole = |stated: &BTreeMap<String, Vec<f64>>| stated.len() == posterior.unknowns.len();
+    let same = match start {
+        Start::At(stated) => whole(stated),
+        Start::File { rows, .. } => rows
+            .split_first()
+            .is_some_and(|(first, others)| whole(first) && others.iter().all(|row| row == first)),
+        Start::Spread | Start::Prior => false,
+    };
+    same.then(|| Condition {
+        name: "start forgotten",
+        standing: Standing::NotKnown,
+        evidence: "all chains start at one point, so that they agree shows nothing about it: state no start, or a start \
+                   file with a row of its own for each chain"
+            .into(),
+    })
 }

@@ -35,6 +35,10 @@ impl Target for Posterior {
     }
 }
 
+/// A chain whose log density is above this has run away: the exponential of a slice's level, or of an acceptance,
+/// is about to be lost in its rounding, and no density of real data is so high.
+const RUN_AWAY: f64 = 1e15;
+
 /// Chains in lockstep on a density.
 pub struct Lanes {
     model: Arc<Density>,
@@ -100,6 +104,12 @@ impl Lanes {
         })
     }
 
+    /// Such a chain stays where it is and records nothing but NaN, so that no figure can be made of it. Its log
+    /// density is part of its state: an interrupted run goes on the same.
+    fn ran_away(&self, lane: usize) -> bool {
+        self.walkers.log_density[lane] > RUN_AWAY
+    }
+
     /// Computes the recorded quantities at the present position into `recorder.outputs`.
     fn record(&mut self) {
         let lanes = self.walkers.lanes;
@@ -160,13 +170,17 @@ impl Course for Lanes {
         ];
         for draw in 0..draws {
             for _ in 0..self.model.every {
+                for lane in 0..lanes {
+                    self.walkers.active[lane] = !self.ran_away(lane);
+                }
                 self.kernel.step(&mut self.target, &mut self.walkers, phase);
             }
             self.record();
             for (quantity, values) in self.recorder.outputs.chunks_exact(lanes).enumerate() {
-                for (block, &value) in blocks.iter_mut().zip(values) {
+                for (lane, (block, &value)) in blocks.iter_mut().zip(values).enumerate() {
+                    let none = value.is_nan() || self.ran_away(lane);
                     block.values[quantity * draws + draw] =
-                        if value.is_nan() { CANONICAL_NAN } else { value };
+                        if none { CANONICAL_NAN } else { value };
                 }
             }
             for drawn in &mut self.drawn {

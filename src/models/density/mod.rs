@@ -15,6 +15,7 @@ mod names;
 mod observed;
 mod order;
 mod posterior;
+mod ratio;
 mod recorded;
 mod start;
 mod start_reading;
@@ -84,7 +85,7 @@ impl Family for DensityFamily {
             return None;
         }
         let canonical = canonical::of(&declared, &posterior, &sampler, &start);
-        let conditions = conditions::of(&declared, &posterior, &sampler, &start);
+        let conditions = conditions::of(&declared, &posterior, &sampler, &start, request.estimands);
         let every = request.every;
         Some(Arc::new(Density {
             posterior,

@@ -22,6 +22,8 @@ pub struct Unknown {
     /// First of its coordinates; they stand together, as many as the shape has elements.
     pub first: usize,
     pub integer: bool,
+    /// Ends of the support where they are numbers, else infinite.
+    pub ends: (f64, f64),
     /// False for flat laws.
     pub proper: bool,
     /// The law's name and where it is written, for messages.
@@ -147,6 +149,14 @@ pub fn put(named: Named, law: &LawTerm, graph: &mut Graph) -> Placed {
         shape: shape.clone(),
         first,
         integer,
+        ends: (
+            lower
+                .and_then(|end| graph.known_number(end))
+                .unwrap_or(f64::NEG_INFINITY),
+            upper
+                .and_then(|end| graph.known_number(end))
+                .unwrap_or(f64::INFINITY),
+        ),
         proper: law.law.proper(),
         law: law.law.name(),
         place: law.place.clone(),
