@@ -33,6 +33,14 @@ pub enum Command {
         #[arg(long)]
         json: bool,
     },
+    /// Close an interrupted run as it stands, under a plan that says so; the run itself can still go on
+    Seal {
+        /// The study, a TOML file
+        study: PathBuf,
+        /// Folder of the results
+        #[arg(long, value_name = "DIR", default_value = "results")]
+        into: PathBuf,
+    },
     /// Hold a record against its own study: files, plan, draws, figures, pages, and the draws drawn again
     Verify {
         /// The folder of a sealed record

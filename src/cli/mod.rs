@@ -10,6 +10,7 @@ mod own_fault;
 mod progress;
 mod registry;
 mod run;
+mod seal;
 mod signals;
 mod status;
 mod study;
@@ -44,6 +45,7 @@ pub fn run(arguments: impl Iterator<Item = std::ffi::OsString>) -> u8 {
             threads,
             json,
         } => run::run(&study, &into, threads, json),
+        Command::Seal { study, into } => seal::seal(&study, &into),
         Command::Verify {
             record,
             blocks,

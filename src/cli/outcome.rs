@@ -5,7 +5,7 @@ use crate::canon::{self, Json};
 use crate::engine::{PointEnd, Reviewed};
 use crate::estimates::Paired;
 use crate::plan::Plan;
-use crate::record::{self, Circumstances, Open, RecordFault, Sealing};
+use crate::record::{self, Circumstances, JournalFile, Open, RecordFault, Sealing};
 use crate::report::Outcome;
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
@@ -17,6 +17,7 @@ pub struct Filed {
 }
 
 /// Why nothing was filed.
+#[derive(Debug)]
 pub enum NotFiled {
     /// No point found a start.
     NoStart(String),
@@ -29,12 +30,13 @@ impl From<RecordFault> for NotFiled {
     }
 }
 
-/// Seals the record of a run that has ended.
+/// Seals the record of a run that has ended, from the journal of its folder or from another's.
 pub fn file(
     plan: &Plan,
     ends: &[PointEnd<Reviewed>],
     paired: Vec<Option<Paired>>,
     open: Open,
+    journal: Option<&mut JournalFile>,
     mut circumstances: Circumstances,
 ) -> Result<Filed, NotFiled> {
     let outcome = Outcome::of(plan, ends, paired);
@@ -55,7 +57,7 @@ pub fn file(
         files: outcome.files(),
         result_digest: canon::hex(&outcome.digest()),
     };
-    let path = record::seal(open, &sealing, circumstances)?;
+    let path = record::seal(open, journal, &sealing, circumstances)?;
     let status = status(&path)?;
     Ok(Filed { path, status })
 }

@@ -1,6 +1,6 @@
 //! `run`: from a study to its folder of results, and what is said about it.
 
-use super::outcome::{self, Filed};
+use super::outcome::{self, Filed, NotFiled};
 use super::output::{say, tell};
 use super::progress::Progress;
 use super::signals;
@@ -26,7 +26,7 @@ pub fn run(file: &Path, into: &Path, threads: Option<u16>, json: bool) -> Status
 }
 
 /// Prints the results that stand in a folder.
-fn report(filed: &Filed, json: bool) -> Status {
+pub fn report(filed: &Filed, json: bool) -> Status {
     let name = if json {
         "data/summary.json"
     } else {
@@ -105,14 +105,18 @@ fn work(read: &Read, mut open: Open, threads: usize) -> Result<Filed, Status> {
             return Err(status);
         }
     };
-    let filed = outcome::file(plan, &ends, paired, open, circumstances);
-    filed.map_err(|fault| match fault {
-        outcome::NotFiled::NoStart(words) => {
+    outcome::file(plan, &ends, paired, open, None, circumstances).map_err(tell_not_filed)
+}
+
+/// Tells why nothing was filed.
+pub fn tell_not_filed(fault: NotFiled) -> Status {
+    match fault {
+        NotFiled::NoStart(words) => {
             tell(&words);
             Status::Fault
         }
-        outcome::NotFiled::Record(fault) => tell_record(&fault),
-    })
+        NotFiled::Record(fault) => tell_record(&fault),
+    }
 }
 
 /// What must stand before the first draw: room, study, inputs, plan, circumstances.
@@ -135,15 +139,20 @@ fn prepare(
             open.journal.stood
         ));
     }
+    keep_study(read, open)?;
+    Circumstances::begin(open, threads)
+}
+
+/// Study, inputs and plan into the folder.
+pub fn keep_study(read: &Read, open: &Open) -> Result<(), RecordFault> {
     open.write("data/study.toml", &read.bytes)?;
     record::keep_inputs(open, &read.plan.inputs)?;
-    open.write("data/plan.json", read.plan.json().pretty().as_bytes())?;
-    Circumstances::begin(open, threads)
+    open.write("data/plan.json", read.plan.json().pretty().as_bytes())
 }
 
 /// What was cut off the journal: after a kill the rest of its last block, which is as it should be; otherwise the
 /// file was damaged.
-fn cut_words(cut: &Cut) -> String {
+pub fn cut_words(cut: &Cut) -> String {
     let bytes = count(cut.bytes);
     if cut.behind == 0 {
         return format!(
@@ -159,7 +168,7 @@ fn cut_words(cut: &Cut) -> String {
     )
 }
 
-fn halted(halt: &Halt) -> (Status, String) {
+pub fn halted(halt: &Halt) -> (Status, String) {
     match halt {
         Halt::Interrupted => (
             Status::Interrupted,
@@ -182,7 +191,7 @@ fn halted(halt: &Halt) -> (Status, String) {
     }
 }
 
-fn tell_record(fault: &RecordFault) -> Status {
+pub fn tell_record(fault: &RecordFault) -> Status {
     tell(&fault.to_string());
     match fault {
         RecordFault::Held { .. } => {

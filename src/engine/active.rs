@@ -3,6 +3,7 @@
 use super::columns::{Columns, Ledger};
 use super::judge::{Settling, Verdict};
 use super::sink::{Mark, Reader, Stood};
+use super::standing::common;
 use super::task::Task;
 use super::trail::Digest;
 use super::walk::Walk;
@@ -107,7 +108,7 @@ impl<'s> Active<'s> {
 
     /// Enters the blocks that stand for all chains of a course.
     pub(super) fn stands(&mut self, range: Range<usize>, stood: &[Vec<Stood>]) {
-        let common = stood.iter().map(Vec::len).min().unwrap_or(0);
+        let common = common(stood);
         for (chain, blocks) in range.zip(stood) {
             for block in &blocks[..common] {
                 self.enter(chain, block.phase, block.draws, block.mark);

@@ -21,6 +21,7 @@ mod lanes;
 mod paired;
 mod review;
 mod sink;
+mod standing;
 mod task;
 #[cfg(test)]
 mod tests;
@@ -38,4 +39,5 @@ pub use lanes::WIDEST;
 pub use paired::paired;
 pub use review::{PlanJudge, Reviewed, summary};
 pub use sink::{Event, Finished, Journal, Mark, Reader, Sink, Stood};
+pub use standing::common;
 pub use task::{Chain, Task};

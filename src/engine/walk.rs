@@ -4,6 +4,7 @@
 use super::blocks::block_end;
 use super::halt::Halt;
 use super::sink::{Finished, Mark, Reader, Stood};
+use super::standing::common;
 use super::task::Task;
 use super::trail::{self, Digest, StateHash};
 use crate::course::{Course, Phase, State};
@@ -100,10 +101,11 @@ impl Walk {
 
     /// Loads the states after the last block that stands for every chain.
     fn catch_up(&mut self, reader: &Arc<dyn Reader>) -> Result<(), Halt> {
-        let common = self.lanes.iter().map(|lane| lane.stood.len()).min();
-        let Some(common) = common.filter(|&common| common > 0) else {
+        let stood: Vec<&[Stood]> = self.lanes.iter().map(|lane| &*lane.stood).collect();
+        let common = common(&stood);
+        if common == 0 {
             return Ok(());
-        };
+        }
         for index in 0..common {
             let block = self.lanes[0].stood[index];
             let same = |lane: &Lane| {

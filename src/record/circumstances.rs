@@ -49,6 +49,17 @@ impl Circumstances {
         Ok(circumstances)
     }
 
+    /// Has the starts entered in another folder before those of this one, which has none yet.
+    pub fn follow(open: &Open, other: &Open) -> Result<(), RecordFault> {
+        let (from, to) = (other.path().join(NAME), open.path().join(NAME));
+        match fs::read(&from) {
+            Ok(bytes) if !to.exists() => open.write(NAME, &bytes),
+            Ok(_) => Ok(()),
+            Err(fault) if fault.kind() == io::ErrorKind::NotFound => Ok(()),
+            Err(fault) => Err(RecordFault::disk("read", &from, &fault)),
+        }
+    }
+
     /// Enters something more about this start.
     pub fn enter(&mut self, name: &str, what: Json) {
         self.this.push((name.into(), what));

@@ -44,6 +44,16 @@ pub enum Entry {
     Open(Box<Open>),
 }
 
+/// What is seen there from outside.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub enum Seen {
+    /// A sealed record.
+    Done(PathBuf),
+    /// A run that was begun.
+    Begun,
+    Nothing,
+}
+
 /// A folder that is being worked on. Its lock goes when it is dropped.
 pub struct Open {
     folder: Folder,
@@ -61,6 +71,17 @@ impl Folder {
             open: base.join(format!("{name}.open")),
             done: base.join(name),
             plan: *plan,
+        }
+    }
+
+    /// Looks without going in; makes nothing.
+    pub fn look(&self) -> Seen {
+        if self.done.exists() {
+            Seen::Done(self.done.clone())
+        } else if self.open.join("journal").exists() {
+            Seen::Begun
+        } else {
+            Seen::Nothing
         }
     }
 
@@ -180,13 +201,16 @@ mod tests {
     fn a_folder_appears_under_its_name_when_done() {
         let into = tempfile::tempdir().unwrap();
         let folder = Folder::of(into.path(), "some/where/pumps.toml".as_ref(), &[0xab; 32]);
+        assert_eq!(folder.look(), Seen::Nothing);
         let work = open(&folder);
+        assert_eq!(folder.look(), Seen::Begun);
         assert!(work.path().ends_with("pumps/abababababab.open"));
         work.write("data/plan.json", b"{}").unwrap();
         let held = folder.enter().err();
         assert!(matches!(held, Some(RecordFault::Held { .. })));
         let done = work.finish().unwrap();
         assert!(done.ends_with("pumps/abababababab"));
+        assert_eq!(folder.look(), Seen::Done(done.clone()));
         assert_eq!(read(&done, "data/plan.json").unwrap(), "{}");
         let names: Vec<_> = fs::read_dir(&done)
             .unwrap()

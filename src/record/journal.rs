@@ -85,6 +85,11 @@ impl JournalFile {
         self.end
     }
 
+    /// The blocks that stood when it was opened, by point and chain, less those asked for since.
+    pub fn standing_blocks(&self) -> &Shelf {
+        &self.shelf
+    }
+
     /// Every block that stands by now, each byte of it read and held against its digests.
     pub(super) fn rescan(&mut self) -> Result<Shelf, RecordFault> {
         let scanned = scan(&self.file, self.end).map_err(|broken| match broken {

@@ -23,7 +23,7 @@ pub use checkpoints::Checkpoints;
 pub use circumstances::Circumstances;
 pub use draws_file::DrawsFile;
 pub use fault::RecordFault;
-pub use folder::{Entry, Folder, Open, read};
+pub use folder::{Entry, Folder, Open, Seen, read};
 pub use inputs::{keep as keep_inputs, kept};
 pub use journal::JournalFile;
 pub use room::{Needs, check as check_room, needs, size};

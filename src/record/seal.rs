@@ -6,6 +6,7 @@ use super::circumstances::Circumstances;
 use super::draws_file;
 use super::fault::RecordFault;
 use super::folder::Open;
+use super::journal::JournalFile;
 use super::trail_file::{self, TrailRow};
 use crate::course::{Phase, Quantity};
 use crate::engine::trail::{self, Digest, StateHash};
@@ -28,8 +29,10 @@ pub struct Sealing<'a> {
 }
 
 /// Writes the record of a run from its journal and gives the folder its name; nothing in it changes any more.
+/// The journal is that of the folder, or another's, which stays as it is.
 pub fn seal(
     mut open: Open,
+    journal: Option<&mut JournalFile>,
     sealing: &Sealing<'_>,
     circumstances: Circumstances,
 ) -> Result<PathBuf, RecordFault> {
@@ -43,8 +46,9 @@ pub fn seal(
         }
         fs::create_dir_all(&path).map_err(|fault| RecordFault::disk("make", &path, &fault))?;
     }
-    let shelf = open.journal.rescan()?;
-    let reader = open.journal.reader();
+    let journal = journal.unwrap_or(&mut open.journal);
+    let shelf = journal.rescan()?;
+    let (reader, lacking) = (journal.reader(), journal.lacking());
     let mut rows = Vec::new();
     for (point, lengths) in sealing.lengths.iter().enumerate() {
         if let Some(lengths) = lengths {
@@ -54,7 +58,7 @@ pub fn seal(
                 sealing.plan.points[point].ensemble.chains,
                 *lengths,
             )
-            .ok_or_else(|| open.journal.lacking())?;
+            .ok_or_else(|| lacking.clone())?;
             rows.extend(trail_of(sealing.plan, point, &chains)?);
             write_point(open.path(), sealing.plan, point, &chains, &*reader)?;
         }

@@ -4,9 +4,9 @@ use super::{WIDTH, grounds_json, report_html, run_text, summary_csv, summary_jso
 use crate::canon::{self, Json};
 use crate::engine::trail::Digest;
 use crate::engine::{PointEnd, Reviewed, summary};
-use crate::estimates::{Paired, Summary};
+use crate::estimates::{Paired, Summary, count};
 use crate::grounds::{Grounds, grounds};
-use crate::plan::Plan;
+use crate::plan::{self, Plan};
 
 /// The grounds of a point of a plan, with what its draws add once it has run.
 pub fn grounds_of(plan: &Plan, point: usize, summary: Option<&Summary>) -> Grounds {
@@ -115,7 +115,9 @@ impl<'a> Outcome<'a> {
             .iter()
             .map(|(summary, grounds)| (summary.key.clone(), grounds.clone()))
             .collect();
-        let mut text = run_text(&self.plan.title, &self.plan.question, &self.points, WIDTH);
+        let closed = self.closed_text();
+        let head = [&*self.plan.title, &*self.plan.question, &*closed];
+        let mut text = run_text(&head, &self.points, WIDTH);
         text.push_str(&self.failed_text());
         let mut files = vec![
             ("data/plan.json", self.plan.json().pretty()),
@@ -130,6 +132,37 @@ impl<'a> Outcome<'a> {
         }
         let bytes = |(name, text): (&'static str, String)| (name, text.into_bytes());
         files.into_iter().map(bytes).collect()
+    }
+
+    /// Of a run that was closed before its end, how far it was from it; empty of others.
+    pub fn closed_text(&self) -> String {
+        let Some(closed) = &self.plan.closed else {
+            return String::new();
+        };
+        let most = |point: usize| {
+            let point = &self.plan.points[point];
+            let reviews = plan::reviews(&point.ensemble, point.goal.as_ref(), point.block);
+            reviews[reviews.len() - 1]
+        };
+        let words = match &closed[..] {
+            [Some((_, draws))] => format!(
+                "after {} of at most {} draws a chain",
+                count(*draws),
+                count(most(0))
+            ),
+            points => {
+                let none = points.iter().filter(|point| point.is_none()).count();
+                let short = points.iter().enumerate();
+                let short = short.filter(|(at, point)| point.is_some_and(|p| p.1 < most(*at)));
+                format!(
+                    "when {} of its {} points had fewer draws than they may come to, and {} had none",
+                    short.count(),
+                    points.len(),
+                    none
+                )
+            }
+        };
+        format!("Closed early: this run was interrupted and sealed as it stood, {words}.")
     }
 
     fn values_text(&self, point: usize) -> String {

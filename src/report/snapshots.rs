@@ -9,8 +9,7 @@ fn one_point() {
     let s = summary();
     let g = standings(&s);
     let got = run_text(
-        "Failure rates",
-        "Which station fails most often?",
+        &["Failure rates", "Which station fails most often?"],
         &[(s, g)],
         WIDTH,
     );
@@ -28,7 +27,7 @@ fn many_points() {
         .into_iter()
         .map(|s| (s.clone(), standings(&s)))
         .collect();
-    let got = run_text("Failure rates", "", &points, WIDTH);
+    let got = run_text(&["Failure rates", ""], &points, WIDTH);
     assert!(
         got.lines()
             .all(|l| unicode_width::UnicodeWidthStr::width(l) <= WIDTH),
@@ -46,7 +45,7 @@ fn a_sweep_shows_the_grounds_of_its_worst_point() {
     points[1].1.claims[1].conditions[0].standing = crate::course::Standing::Failed;
     points[1].1.claims[1].standing = crate::course::Standing::Failed;
     points[2].1.claims[1].standing = crate::course::Standing::Proved;
-    let got = run_text("Failure rates", "", &points, WIDTH);
+    let got = run_text(&["Failure rates", ""], &points, WIDTH);
     let flat = got.split_whitespace().collect::<Vec<_>>().join(" ");
     let heading = "Grounds (of the worst point, model.constant.prior_rate = 1.5, sampler.method = slice; at 2 others";
     assert!(flat.contains(heading), "{got}");

@@ -15,10 +15,10 @@ pub const FOOT: &str = "These figures describe the model as stated. Where one of
 /// Points of a sweep shown on a terminal.
 const POINTS: usize = 60;
 
-/// Title and question, then the figures of the only point or a table over the points, then the grounds.
-pub fn run_text(title: &str, question: &str, points: &[(Summary, Grounds)], page: usize) -> String {
+/// Title, question and what else heads it, then the figures of the only point or a table over the points, then the grounds.
+pub fn run_text(head: &[&str], points: &[(Summary, Grounds)], page: usize) -> String {
     let mut out = String::new();
-    for line in [title, question] {
+    for line in head {
         if !line.trim().is_empty() {
             out.push_str(&wrap(line, page, 0, 0));
         }
