@@ -62,6 +62,21 @@ pub enum Command {
         #[arg(long)]
         json: bool,
     },
+    /// List the records under a folder: how far each is, its goal, its first figures
+    List {
+        /// The folder that holds the results
+        #[arg(default_value = "results")]
+        folder: PathBuf,
+        /// Only those with this in path, title, question or digests
+        #[arg(long, value_name = "TEXT")]
+        with: Option<String>,
+        /// Only those that are so
+        #[arg(long, value_name = "STATE")]
+        only: Option<super::list::Only>,
+        /// Print the list as JSON on stdout
+        #[arg(long)]
+        json: bool,
+    },
     /// List the laws, functions and methods that a study may use
     Catalogue {
         /// Only one of the lists

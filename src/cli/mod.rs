@@ -4,6 +4,7 @@
 mod arguments;
 mod catalogue;
 mod check;
+mod list;
 mod outcome;
 mod output;
 mod own_fault;
@@ -63,6 +64,12 @@ pub fn run(arguments: impl Iterator<Item = std::ffi::OsString>) -> u8 {
             };
             verify::verify(&record, &ask)
         }
+        Command::List {
+            folder,
+            with,
+            only,
+            json,
+        } => list::list(&folder, with.as_deref(), only, json),
         Command::Catalogue { list } => catalogue::catalogue(list),
     };
     status.code()
