@@ -14,7 +14,7 @@ use std::sync::atomic::{AtomicBool, Ordering};
 /// A self-chosen burn-in ends once every R-hat over its last half is under this.
 const BURN_IN_R_HAT: f64 = 1.05;
 /// Bytes that the estimates of quantities side by side may take.
-const MEMORY: usize = 1 << 30;
+const MEMORY: usize = 448 << 20;
 /// Copies of a quantity's draws that its estimate makes, about.
 const COPIES: usize = 8;
 
