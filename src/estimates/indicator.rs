@@ -109,10 +109,14 @@ impl Source for Indicators {
 }
 
 /// How often a condition holds both at a draw and `lag` draws later.
-#[multiversion(targets(
-    "x86_64+avx512f+avx512bw+avx512vl+avx512vpopcntdq+popcnt",
-    "x86_64+avx2+popcnt"
-))]
+#[cfg_attr(
+    not(feature = "no-avx512"),
+    multiversion(targets(
+        "x86_64+avx512f+avx512bw+avx512vl+avx512vpopcntdq+popcnt",
+        "x86_64+avx2+popcnt"
+    ))
+)]
+#[cfg_attr(feature = "no-avx512", multiversion(targets("x86_64+avx2+popcnt")))]
 fn joint(words: &[u64], lag: usize) -> u64 {
     let (skip, shift) = (lag / 64, (lag % 64) as u32);
     let later = &words[skip..];

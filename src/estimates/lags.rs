@@ -118,7 +118,11 @@ impl Source for Series {
 }
 
 /// Sums of `x[t] * x[t + lag]` at eight consecutive lags. Eight partial sums a lag, folded every 1024 steps.
-#[multiversion(targets("x86_64+avx512f", "x86_64+avx2"))]
+#[cfg_attr(
+    not(feature = "no-avx512"),
+    multiversion(targets("x86_64+avx512f", "x86_64+avx2"))
+)]
+#[cfg_attr(feature = "no-avx512", multiversion(targets("x86_64+avx2")))]
 fn products(x: &[f64], first: usize) -> [f64; BLOCK] {
     let mut sums = [0.0; BLOCK];
     let common = x.len().saturating_sub(first + BLOCK - 1) / 8 * 8;

@@ -1,23 +1,35 @@
 //! The lane loops of the random walk: eight lanes in a register where the machine has them so wide, with the
 //! same bits where it has not, since no lane's arithmetic crosses to another.
 
+use super::gain::AdaptiveScale;
 use multiversion::multiversion;
 
 /// Lanes that go through a loop together.
 const BLOCK: usize = 8;
 
-/// Adds to each moved coordinate its row of the factor times the normals (in the order of the columns),
-/// or just its normal without a factor. Coordinate `on[i]` of `proposal`, `i` of `normals`, the packed rows
-/// of `factor`: all with lanes fastest.
-#[multiversion(targets("x86_64+avx512f+avx512dq+avx512vl", "x86_64+avx2"))]
-pub fn add_steps(on: &[usize], factor: Option<&[f64]>, normals: &[f64], proposal: &mut [f64]) {
-    let lanes = normals.len() / on.len();
+/// Makes steps of the normals, each lane by its scale, and proposes for each moved coordinate its position and its
+/// row of the factor times the steps (in the order of the columns), or just its step without a factor. Coordinate `on[i]` of `position` and `proposal`, `i` of
+/// `normals`, the packed rows of `factor`: all with lanes fastest.
+#[cfg_attr(
+    not(feature = "no-avx512"),
+    multiversion(targets("x86_64+avx512f+avx512dq+avx512vl", "x86_64+avx2"))
+)]
+#[cfg_attr(feature = "no-avx512", multiversion(targets("x86_64+avx2")))]
+pub fn add_steps(
+    on: &[usize],
+    factor: Option<&[f64]>,
+    scales: &[AdaptiveScale],
+    normals: &mut [f64],
+    position: &[f64],
+    proposal: &mut [f64],
+) {
+    let lanes = scales.len();
     let whole = lanes - lanes % BLOCK;
     for first in (0..whole).step_by(BLOCK) {
-        add_block::<BLOCK>(on, factor, normals, proposal, lanes, first);
+        add_block::<BLOCK>(on, factor, scales, normals, position, proposal, first);
     }
     for first in whole..lanes {
-        add_block::<1>(on, factor, normals, proposal, lanes, first);
+        add_block::<1>(on, factor, scales, normals, position, proposal, first);
     }
 }
 
@@ -25,17 +37,25 @@ pub fn add_steps(on: &[usize], factor: Option<&[f64]>, normals: &[f64], proposal
 fn add_block<const N: usize>(
     on: &[usize],
     factor: Option<&[f64]>,
-    normals: &[f64],
+    scales: &[AdaptiveScale],
+    normals: &mut [f64],
+    position: &[f64],
     proposal: &mut [f64],
-    lanes: usize,
     first: usize,
 ) {
+    let lanes = scales.len();
+    let scale: [f64; N] = std::array::from_fn(|k| scales[first + k].value());
+    for i in 0..on.len() {
+        let z: &mut [f64; N] = block_mut(normals, i * lanes + first);
+        for k in 0..N {
+            z[k] *= scale[k];
+        }
+    }
     let mut row = 0;
     for (i, &coordinate) in on.iter().enumerate() {
-        let x: &mut [f64; N] = block_mut(proposal, coordinate * lanes + first);
+        let mut moved: [f64; N] = *block(position, coordinate * lanes + first);
         match factor {
             Some(factor) => {
-                let mut moved = *x;
                 for j in 0..=i {
                     let l: &[f64; N] = block(factor, (row + j) * lanes + first);
                     let z: &[f64; N] = block(normals, j * lanes + first);
@@ -43,47 +63,83 @@ fn add_block<const N: usize>(
                         moved[k] += l[k] * z[k];
                     }
                 }
-                *x = moved;
                 row += i + 1;
             }
             None => {
                 let z: &[f64; N] = block(normals, i * lanes + first);
                 for k in 0..N {
-                    x[k] += z[k];
+                    moved[k] += z[k];
                 }
             }
         }
+        *block_mut(proposal, coordinate * lanes + first) = moved;
     }
 }
 
-/// Takes the moved coordinates of the proposal where it was accepted.
-#[multiversion(targets("x86_64+avx512f+avx512dq+avx512vl", "x86_64+avx2"))]
-pub fn accept_rows(on: &[usize], accept: &[bool], proposal: &[f64], position: &mut [f64]) {
-    let lanes = accept.len();
+/// A proposal of every lane and where the lanes stand, coordinates with lanes fastest.
+pub struct Trial<'a> {
+    /// The moved coordinates; elsewhere proposal and position are the same.
+    pub on: &'a [usize],
+    pub active: &'a [bool],
+    /// What a lane's log density may fall by, and less.
+    pub patience: &'a [f64],
+    pub proposal: &'a [f64],
+    /// The log density at the proposal; then how far it is above that at the position.
+    pub density: &'a mut [f64],
+    pub position: &'a mut [f64],
+    pub log_density: &'a mut [f64],
+    /// 1 where the step counts, or 0.
+    pub counts: u64,
+    pub steps: &'a mut [u64],
+    pub accepted: &'a mut [u64],
+}
+
+/// Moves the active lanes whose proposals are accepted.
+#[cfg_attr(
+    not(feature = "no-avx512"),
+    multiversion(targets("x86_64+avx512f+avx512dq+avx512vl", "x86_64+avx2"))
+)]
+#[cfg_attr(feature = "no-avx512", multiversion(targets("x86_64+avx2")))]
+pub fn decide(mut trial: Trial) {
+    let lanes = trial.active.len();
     let whole = lanes - lanes % BLOCK;
     for first in (0..whole).step_by(BLOCK) {
-        accept_block::<BLOCK>(on, accept, proposal, position, first);
+        decide_block::<BLOCK>(&mut trial, first);
     }
     for first in whole..lanes {
-        accept_block::<1>(on, accept, proposal, position, first);
+        decide_block::<1>(&mut trial, first);
     }
 }
 
 #[inline(always)]
-fn accept_block<const N: usize>(
-    on: &[usize],
-    accept: &[bool],
-    proposal: &[f64],
-    position: &mut [f64],
-    first: usize,
-) {
-    let lanes = accept.len();
-    let accept: &[bool; N] = block(accept, first);
-    for &coordinate in on {
-        let new: &[f64; N] = block(proposal, coordinate * lanes + first);
-        let x: &mut [f64; N] = block_mut(position, coordinate * lanes + first);
+fn decide_block<const N: usize>(trial: &mut Trial, first: usize) {
+    let lanes = trial.active.len();
+    let active: &[bool; N] = block(trial.active, first);
+    let patience: &[f64; N] = block(trial.patience, first);
+    let density: &mut [f64; N] = block_mut(trial.density, first);
+    let log_density: &mut [f64; N] = block_mut(trial.log_density, first);
+    let steps: &mut [u64; N] = block_mut(trial.steps, first);
+    let accepted: &mut [u64; N] = block_mut(trial.accepted, first);
+    // Whole words, so that all lanes are decided in a register.
+    let mut accept = [0_u64; N];
+    for k in 0..N {
+        let active = u64::from(active[k]);
+        let rise = density[k] - log_density[k];
+        accept[k] = active & u64::from(rise > -patience[k]);
+        log_density[k] = if accept[k] != 0 {
+            density[k]
+        } else {
+            log_density[k]
+        };
+        density[k] = rise;
+        steps[k] += active & trial.counts;
+        accepted[k] += accept[k] & trial.counts;
+    }
+    for &coordinate in trial.on {
+        let new: &[f64; N] = block(trial.proposal, coordinate * lanes + first);
+        let x: &mut [f64; N] = block_mut(trial.position, coordinate * lanes + first);
         for k in 0..N {
-            x[k] = if accept[k] { new[k] } else { x[k] };
+            x[k] = if accept[k] != 0 { new[k] } else { x[k] };
         }
     }
 }
@@ -96,7 +152,11 @@ pub struct Moments<'a> {
 }
 
 /// Takes the positions of the active lanes into their moments, each with its own gain.
-#[multiversion(targets("x86_64+avx512f+avx512dq+avx512vl", "x86_64+avx2"))]
+#[cfg_attr(
+    not(feature = "no-avx512"),
+    multiversion(targets("x86_64+avx512f+avx512dq+avx512vl", "x86_64+avx2"))
+)]
+#[cfg_attr(feature = "no-avx512", multiversion(targets("x86_64+avx2")))]
 pub fn add_to_moments(
     on: &[usize],
     position: &[f64],

@@ -8,7 +8,7 @@ use super::covariance::RunningCovariance;
 use super::declaration::{Choice, Method, TIMES};
 use super::gain::AdaptiveScale;
 use super::kernel::Kernel;
-use super::lockstep::{accept_rows, add_steps};
+use super::lockstep::{Trial, add_steps, decide};
 use super::saved::Reader;
 use super::walkers::Walkers;
 use crate::course::{Phase, State, Target};
@@ -75,13 +75,12 @@ pub struct RandomWalk {
     /// Steps and acceptances of each lane in the draws.
     steps: Vec<u64>,
     accepted: Vec<u64>,
-    /// `s z`, coordinate by coordinate, lanes fastest.
+    /// `z`, then `s z`, coordinate by coordinate, lanes fastest.
     normals: Vec<f64>,
     /// Minus the logarithm of the uniform number of the acceptance test.
     patience: Vec<f64>,
     proposal: Vec<f64>,
     density: Vec<f64>,
-    accept: Vec<bool>,
 }
 
 impl RandomWalk {
@@ -99,43 +98,31 @@ impl RandomWalk {
             patience: vec![0.0; lanes],
             proposal: vec![0.0; dimension * lanes],
             density: vec![0.0; lanes],
-            accept: vec![false; lanes],
             on,
         }
     }
 
-    /// Steps for the active lanes, none for the others, and the patience of each acceptance test.
+    /// Normal numbers for the active lanes, 0 for the others, and the patience of each acceptance test.
     fn draw(&mut self, walkers: &mut Walkers) {
         let lanes = walkers.lanes;
+        if !walkers.active.contains(&false) {
+            for row in self.normals.chunks_exact_mut(lanes) {
+                random::normals(&mut walkers.streams, row);
+            }
+            for (patience, stream) in self.patience.iter_mut().zip(&mut walkers.streams) {
+                *patience = random::exponential(stream);
+            }
+            return;
+        }
         for (lane, stream) in walkers.streams.iter_mut().enumerate() {
             let normals = self.normals.iter_mut().skip(lane).step_by(lanes);
             if walkers.active[lane] {
-                let scale = self.scales[lane].value();
-                normals.for_each(|z| *z = scale * random::normal(stream));
+                normals.for_each(|z| *z = random::normal(stream));
                 self.patience[lane] = random::exponential(stream);
             } else {
                 normals.for_each(|z| *z = 0.0);
             }
         }
-    }
-
-    fn decide(&mut self, walkers: &mut Walkers) {
-        let lanes = walkers.lanes;
-        for lane in 0..lanes {
-            let rise = self.density[lane] - walkers.log_density[lane];
-            let accept = walkers.active[lane] && rise > -self.patience[lane];
-            self.accept[lane] = accept;
-            if accept {
-                walkers.log_density[lane] = self.density[lane];
-            }
-            self.density[lane] = rise;
-        }
-        accept_rows(
-            &self.on,
-            &self.accept,
-            &self.proposal,
-            &mut walkers.position,
-        );
     }
 
     /// Adapts each active lane by its own step; `density` holds the rises.
@@ -160,27 +147,38 @@ impl RandomWalk {
             }
         }
     }
-
-    fn count(&mut self, walkers: &Walkers) {
-        for lane in 0..walkers.lanes {
-            self.steps[lane] += u64::from(walkers.active[lane]);
-            self.accepted[lane] += u64::from(self.accept[lane]);
-        }
-    }
 }
 
 impl Kernel for RandomWalk {
     fn step(&mut self, target: &mut dyn Target, walkers: &mut Walkers, phase: Phase) {
         self.draw(walkers);
-        self.proposal.copy_from_slice(&walkers.position);
+        if self.on.len() * walkers.lanes < self.proposal.len() {
+            self.proposal.copy_from_slice(&walkers.position);
+        }
         let factor = self.shape.as_ref().map(RunningCovariance::factor);
-        add_steps(&self.on, factor, &self.normals, &mut self.proposal);
+        add_steps(
+            &self.on,
+            factor,
+            &self.scales,
+            &mut self.normals,
+            &walkers.position,
+            &mut self.proposal,
+        );
         target.log_density(&self.proposal, &mut self.density);
-        self.decide(walkers);
-        match phase {
-            Phase::BurnIn if self.adapt != Adapt::None => self.learn(walkers),
-            Phase::BurnIn => {}
-            Phase::Draws => self.count(walkers),
+        decide(Trial {
+            on: &self.on,
+            active: &walkers.active,
+            patience: &self.patience,
+            proposal: &self.proposal,
+            density: &mut self.density,
+            position: &mut walkers.position,
+            log_density: &mut walkers.log_density,
+            counts: u64::from(phase == Phase::Draws),
+            steps: &mut self.steps,
+            accepted: &mut self.accepted,
+        });
+        if phase == Phase::BurnIn && self.adapt != Adapt::None {
+            self.learn(walkers);
         }
     }
 

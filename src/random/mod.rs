@@ -29,6 +29,6 @@ pub use gamma::{gamma, ln_gamma};
 pub use geometric::geometric;
 pub use index::index;
 pub use negative_binomial::negative_binomial;
-pub use normal::{fill_normals, normal};
+pub use normal::{normal, normals};
 pub use poisson::poisson;
 pub use stream::{Purpose, Stream};

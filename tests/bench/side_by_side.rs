@@ -3,7 +3,8 @@
 //! Every pair is timed in turn, and the ratio is the median over the rounds: above 1 the study is the faster.
 //! Studies advance eight chains on one thread; a step of one chain counts as one. "Plain" is what a careful
 //! programmer writes for the task: std's functions, a fast scalar generator, independent steps of one scale,
-//! one chain after another. The processor's instructions are whatever this build chooses at run time.
+//! one chain after another. `cargo bench -- banana normal` runs these parts only. The processor's instructions are whatever this build chooses at run time; `cargo bench --features
+//! no-avx512` measures the loops for AVX2 where AVX-512 is at hand.
 
 mod generator;
 mod journal;
@@ -19,14 +20,49 @@ use std::path::Path;
 use timing::{heading, pair, report, seconds, single};
 
 fn main() {
+    // Words after `cargo bench --` name the parts to run; cargo adds options of its own.
+    let wanted: Vec<String> = std::env::args()
+        .skip(1)
+        .filter(|word| !word.starts_with('-'))
+        .collect();
+    let runs = |part: &str| wanted.is_empty() || wanted.iter().any(|word| word == part);
     let folder = tempfile::tempdir().expect("a folder");
-    heading();
+    heading(instructions());
     for adapt in ["scale", "covariance"] {
-        walks(folder.path(), adapt);
+        if runs("banana") {
+            banana(folder.path(), adapt);
+        }
+        if runs("normal") {
+            normal(folder.path(), adapt);
+        }
+        if runs("logistic") {
+            logistic(folder.path(), adapt);
+        }
     }
-    estimates();
-    journal::run(folder.path());
-    starts();
+    if runs("estimates") {
+        estimates();
+    }
+    if runs("journal") {
+        journal::run(folder.path());
+    }
+    if runs("starts") {
+        starts();
+    }
+}
+
+/// The widest instructions that the loops of this build use here.
+fn instructions() -> &'static str {
+    #[cfg(target_arch = "x86_64")]
+    {
+        // What `multiversion` asks for, besides the named features, before it takes AVX-512.
+        if cfg!(not(feature = "no-avx512")) && std::is_x86_feature_detected!("avx512vbmi2") {
+            return "AVX-512";
+        }
+        if std::is_x86_feature_detected!("avx2") && std::is_x86_feature_detected!("fma") {
+            return "AVX2";
+        }
+    }
+    "no more than the target's own"
 }
 
 /// Steps a second, in millions.
@@ -53,7 +89,7 @@ fn steps(
     );
 }
 
-fn walks(folder: &Path, adapt: &str) {
+fn banana(folder: &Path, adapt: &str) {
     let mut generator = Generator::new(1);
     let plan = study::plan(folder, &tasks::banana(adapt), &[]);
     steps(
@@ -63,7 +99,10 @@ fn walks(folder: &Path, adapt: &str) {
         "1.0",
         |n| drop(std::hint::black_box(plain::banana(&mut generator, n))),
     );
+}
 
+fn normal(folder: &Path, adapt: &str) {
+    let mut generator = Generator::new(1);
     let precision = tasks::precision();
     let data = [("precision.csv", tasks::precision_file())];
     let plan = study::plan(folder, &tasks::normal(adapt), &data);
@@ -80,7 +119,10 @@ fn walks(folder: &Path, adapt: &str) {
             )))
         },
     );
+}
 
+fn logistic(folder: &Path, adapt: &str) {
+    let mut generator = Generator::new(2);
     let regression = tasks::regression(1000);
     let data = [("rows.csv", regression.file())];
     let plan = study::plan(folder, &tasks::logistic(adapt), &data);

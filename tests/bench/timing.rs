@@ -48,7 +48,8 @@ pub fn report(task: &str, unit: &str, ours: f64, plain: f64, ratio: f64, asked: 
     println!("{task:<44} {ours:>12.4} {plain:>12.4} {unit:<12} {ratio:>7.2}  {asked}");
 }
 
-pub fn heading() {
+pub fn heading(instructions: &str) {
+    println!("instructions: {instructions}");
     println!(
         "{:<44} {:>12} {:>12} {:<12} {:>7}  asked",
         "task", "odograph", "plain", "unit", "ratio"

@@ -4,6 +4,7 @@ mod cost;
 mod memory;
 mod run;
 mod schedule;
+mod sides;
 mod tape;
 
 #[cfg(test)]
@@ -11,9 +12,10 @@ mod tests;
 
 use super::graph::Graph;
 use crate::laws::Value;
-use memory::{Memory, Pack, WIDTH};
+use memory::{Memory, WIDTH};
+use sides::Lanes;
 use std::sync::Arc;
-use tape::{Output, StoreForm, Tape};
+use tape::{Output, Tape};
 
 /// Packs of a block: 32 rows of eight lanes, or 256 rows of one. About ten blocks stay in the first cache.
 const BLOCK: usize = 32;
@@ -49,6 +51,25 @@ impl Program {
     /// Arithmetic operations an evaluation of one lane, about; from the program alone.
     pub fn cost(&self) -> f64 {
         self.tape.cost
+    }
+
+    /// The input that each output repeats, if there is nothing to compute.
+    pub fn repeats(&self) -> Option<Vec<usize>> {
+        let mut slots = Vec::new();
+        for output in &self.tape.outputs {
+            match *output {
+                Output::Scalar(register) => {
+                    let mut inputs = self.tape.scalar_inputs.iter();
+                    slots.push(inputs.find(|input| input.1 == register)?.0);
+                }
+                Output::Vector(store, rows) => {
+                    let mut inputs = self.tape.vector_inputs.iter();
+                    let first = inputs.find(|input| input.1 == store)?.0;
+                    slots.extend(first..first + rows);
+                }
+            }
+        }
+        self.tape.steps.is_empty().then_some(slots)
     }
 
     /// A machine for so many lanes, each of which has its own inputs and outputs.
@@ -105,72 +126,13 @@ impl Machine {
         let mut first = 0;
         while first < self.lanes {
             let live = WIDTH.min(self.lanes - first);
-            self.load(inputs, first, live);
-            run::run(&self.tape, &mut self.memory, live);
-            self.unload(outputs, first, live);
-            first += live;
-        }
-    }
-
-    /// Puts the inputs of some lanes in place; lanes not in use repeat the first.
-    fn load(&mut self, inputs: &[f64], first: usize, live: usize) {
-        let lanes = self.lanes;
-        let slot = |slot: usize| &inputs[slot * lanes + first..slot * lanes + first + live];
-        let fill = |pack: &mut [f64], numbers: &[f64]| {
-            if let Ok(numbers) = <&[f64; WIDTH]>::try_from(numbers) {
-                pack.copy_from_slice(numbers);
-            } else {
-                pack[..live].copy_from_slice(numbers);
-                pack[live..].fill(numbers[0]);
-            }
-        };
-        for &(at, register) in &self.tape.scalar_inputs {
-            let Pack(pack) = &mut self.memory.scalars[register];
-            fill(pack, slot(at));
-        }
-        for &(at, store) in &self.tape.vector_inputs {
-            let StoreForm::Whole(rows) = self.tape.stores[store] else {
-                continue;
+            let lanes = Lanes {
+                lanes: self.lanes,
+                first,
+                live,
             };
-            let out = self.memory.stores[store].all_mut();
-            if !self.memory.wide {
-                memory::spread_data(&inputs[at..at + rows], false, out);
-                continue;
-            }
-            if lanes == WIDTH {
-                out[..rows * WIDTH].copy_from_slice(&inputs[at * WIDTH..(at + rows) * WIDTH]);
-                continue;
-            }
-            for (row, pack) in out.chunks_exact_mut(WIDTH).take(rows).enumerate() {
-                fill(pack, slot(at + row));
-            }
-        }
-    }
-
-    fn unload(&self, outputs: &mut [f64], first: usize, live: usize) {
-        let lanes = self.lanes;
-        let mut at = 0;
-        for output in &self.tape.outputs {
-            match *output {
-                Output::Scalar(register) => {
-                    let out = &mut outputs[at * lanes + first..at * lanes + first + live];
-                    out.copy_from_slice(&self.memory.scalars[register].0[..live]);
-                    at += 1;
-                }
-                Output::Vector(store, rows) if self.memory.wide => {
-                    let numbers = self.memory.stores[store].all();
-                    for row in 0..rows {
-                        let out = &mut outputs[at * lanes + first..at * lanes + first + live];
-                        out.copy_from_slice(&numbers[row * WIDTH..row * WIDTH + live]);
-                        at += 1;
-                    }
-                }
-                Output::Vector(store, rows) => {
-                    outputs[at..at + rows]
-                        .copy_from_slice(&self.memory.stores[store].all()[..rows]);
-                    at += rows;
-                }
-            }
+            run::run(&self.tape, &mut self.memory, inputs, outputs, lanes);
+            first += live;
         }
     }
 }

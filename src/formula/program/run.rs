@@ -2,15 +2,30 @@
 
 use super::super::graph::position;
 use super::memory::{Memory, Pack, Partial, WIDTH, spread_data};
+use super::sides::Lanes;
 use super::tape::{Loop, NOWHERE, RowStep, Step, Tape, Tiles};
 use crate::maths::{CHUNK, Unary};
 
-/// Does all steps. `live` is the number of lanes in use.
-#[multiversion::multiversion(targets(
-    "x86_64+avx512f+avx512dq+avx512vl+avx512bw+avx2+fma",
-    "x86_64+avx2+fma"
-))]
-pub(super) fn run(tape: &Tape, memory: &mut Memory, live: usize) {
+/// Does all steps for some lanes.
+#[cfg_attr(
+    not(feature = "no-avx512"),
+    multiversion::multiversion(targets(
+        "x86_64+avx512f+avx512dq+avx512vl+avx512bw+avx2+fma",
+        "x86_64+avx2+fma"
+    ))
+)]
+#[cfg_attr(
+    feature = "no-avx512",
+    multiversion::multiversion(targets("x86_64+avx2+fma"))
+)]
+pub(super) fn run(
+    tape: &Tape,
+    memory: &mut Memory,
+    inputs: &[f64],
+    outputs: &mut [f64],
+    lanes: Lanes,
+) {
+    lanes.load(tape, memory, inputs);
     for step in &tape.steps {
         match step {
             Step::Unary(Unary::Tanh, out, a) => {
@@ -37,7 +52,7 @@ pub(super) fn run(tape: &Tape, memory: &mut Memory, live: usize) {
             }
             Step::Slow(slow, out, operands) => {
                 let operands = operands.each_ref().map(|a| &memory.scalars[*a].0);
-                memory.scalars[*out].0 = slow.lanes(operands, live);
+                memory.scalars[*out].0 = slow.lanes(operands, lanes.live);
             }
             Step::Element(out, store, at) => {
                 memory.scalars[*out] = if memory.wide {
@@ -60,6 +75,7 @@ pub(super) fn run(tape: &Tape, memory: &mut Memory, live: usize) {
             Step::Loop(rows) => row_loop(rows, tape, memory),
         }
     }
+    lanes.unload(tape, memory, outputs);
 }
 
 #[inline(always)]

@@ -10,6 +10,10 @@ use std::sync::Arc;
 /// The one NaN that is recorded: which bits arithmetic makes depends on the machine.
 const CANONICAL_NAN: f64 = f64::from_bits(0x7ff8_0000_0000_0000);
 
+fn canonical(x: f64) -> f64 {
+    if x.is_nan() { CANONICAL_NAN } else { x }
+}
+
 /// The posterior as a target for kernels.
 struct Posterior {
     lanes: usize,
@@ -26,9 +30,10 @@ impl Target for Posterior {
     }
     fn log_density(&mut self, position: &[f64], out: &mut [f64]) {
         self.machine.run(position, out);
-        for value in out {
-            // Neither an undefined nor an infinite density is a place to go to.
-            if !value.is_finite() {
+        // Neither an undefined nor an infinite density is a place to go to. Asked first: what is not written
+        // anew is read again at once.
+        if !out.iter().all(|value| value.is_finite()) {
+            for value in out.iter_mut().filter(|value| !value.is_finite()) {
                 *value = f64::NEG_INFINITY;
             }
         }
@@ -50,12 +55,20 @@ pub struct Lanes {
     recorder: Recorder,
 }
 
+/// Draws that are kept together before they go to the blocks, where each quantity of each lane has a place of
+/// its own: some lines of the cache there, so that its prefetching helps.
+const BATCH: usize = 32;
+
 /// What turns positions into recorded quantities.
 struct Recorder {
     keys: Vec<[u8; 32]>,
+    /// The coordinate that each quantity repeats, where that is all.
+    repeats: Option<Vec<usize>>,
     machine: Machine,
     parameters: Vec<Machine>,
     inputs: Vec<f64>,
+    /// The quantities of a batch of draws: quantity `q` of lane `l` in draw `d` of the batch is at
+    /// `(d * quantities + q) * lanes + l`.
     outputs: Vec<f64>,
 }
 
@@ -84,7 +97,8 @@ impl Lanes {
         let recorder = Recorder {
             keys: chains.iter().map(|seed| seed.stream_key).collect(),
             inputs: vec![0.0; model.recorded.program.inputs() * lanes],
-            outputs: vec![0.0; model.recorded.quantities.len() * lanes],
+            outputs: vec![0.0; BATCH * model.recorded.quantities.len() * lanes],
+            repeats: model.recorded.program.repeats(),
             parameters: model
                 .recorded
                 .predictions
@@ -110,22 +124,45 @@ impl Lanes {
         self.walkers.log_density[lane] > RUN_AWAY
     }
 
-    /// Computes the recorded quantities at the present position into `recorder.outputs`.
-    fn record(&mut self) {
+    /// Leaves nothing of the lanes that ran away in draw `of_batch` of the batch.
+    fn blank(&mut self, of_batch: usize) {
         let lanes = self.walkers.lanes;
+        let size = self.model.recorded.quantities.len() * lanes;
+        for lane in 0..lanes {
+            if !self.ran_away(lane) {
+                continue;
+            }
+            let draw = &mut self.recorder.outputs[of_batch * size..][..size];
+            draw.iter_mut()
+                .skip(lane)
+                .step_by(lanes)
+                .for_each(|x| *x = CANONICAL_NAN);
+        }
+    }
+
+    /// Computes the recorded quantities at the present position as draw `of_batch` of the batch.
+    fn record(&mut self, of_batch: usize) {
+        let lanes = self.walkers.lanes;
+        let position = &self.walkers.position;
         let recorder = &mut self.recorder;
-        let mut at = self.walkers.position.len();
+        let size = self.model.recorded.quantities.len() * lanes;
+        let outputs = &mut recorder.outputs[of_batch * size..][..size];
+        let mut at = position.len();
         if recorder.parameters.is_empty() {
-            recorder
-                .machine
-                .run(&self.walkers.position, &mut recorder.outputs);
+            match &recorder.repeats {
+                Some(coordinates) => copy_rows(coordinates, position, lanes, outputs),
+                None => {
+                    recorder.machine.run(position, outputs);
+                    outputs.iter_mut().for_each(|x| *x = canonical(*x));
+                }
+            }
             return;
         }
-        recorder.inputs[..at].copy_from_slice(&self.walkers.position);
+        recorder.inputs[..at].copy_from_slice(position);
         let predictions = &self.model.recorded.predictions;
         for (prediction, machine) in predictions.iter().zip(&mut recorder.parameters) {
             let mut numbers = vec![0.0; prediction.parameters.outputs() * lanes];
-            machine.run(&self.walkers.position, &mut numbers);
+            machine.run(position, &mut numbers);
             for lane in 0..lanes {
                 let purpose = Purpose::Prediction {
                     quantity: prediction.key,
@@ -147,9 +184,34 @@ impl Lanes {
             }
             at += prediction.len * lanes;
         }
-        recorder
-            .machine
-            .run(&recorder.inputs, &mut recorder.outputs);
+        recorder.machine.run(&recorder.inputs, outputs);
+        outputs.iter_mut().for_each(|x| *x = canonical(*x));
+    }
+
+    /// Moves the first `draws` draws of the batch to the blocks, where they begin at draw `first`.
+    fn unload(&self, blocks: &mut [Block], first: usize, draws: usize) {
+        let lanes = self.walkers.lanes;
+        let size = self.model.recorded.quantities.len() * lanes;
+        let outputs = &self.recorder.outputs;
+        for (lane, block) in blocks.iter_mut().enumerate() {
+            for (quantity, column) in block.values.chunks_exact_mut(block.draws).enumerate() {
+                let column = &mut column[first..first + draws];
+                let at = quantity * lanes + lane;
+                for (to, draw) in column.iter_mut().zip(outputs.chunks_exact(size)) {
+                    *to = draw[at];
+                }
+            }
+        }
+    }
+}
+
+/// Rows of a position one after another.
+fn copy_rows(coordinates: &[usize], position: &[f64], lanes: usize, out: &mut [f64]) {
+    for (&coordinate, out) in coordinates.iter().zip(out.chunks_exact_mut(lanes)) {
+        let row = &position[coordinate * lanes..][..lanes];
+        for (out, &x) in out.iter_mut().zip(row) {
+            *out = canonical(x);
+        }
     }
 }
 
@@ -161,31 +223,28 @@ impl Course for Lanes {
     fn advance(&mut self, phase: Phase, draws: usize) -> Vec<Block> {
         let lanes = self.walkers.lanes;
         let quantities = self.model.recorded.quantities.len();
-        let mut blocks = vec![
-            Block {
-                draws,
-                values: vec![0.0; draws * quantities]
-            };
-            lanes
-        ];
-        for draw in 0..draws {
-            for _ in 0..self.model.every {
-                for lane in 0..lanes {
-                    self.walkers.active[lane] = !self.ran_away(lane);
+        // Each by itself: copies of one would touch all their memory long before the draws do.
+        let block = |_| Block {
+            draws,
+            values: vec![0.0; draws * quantities],
+        };
+        let mut blocks: Vec<Block> = (0..lanes).map(block).collect();
+        for first in (0..draws).step_by(BATCH) {
+            let batch = BATCH.min(draws - first);
+            for of_batch in 0..batch {
+                for _ in 0..self.model.every {
+                    for lane in 0..lanes {
+                        self.walkers.active[lane] = !self.ran_away(lane);
+                    }
+                    self.kernel.step(&mut self.target, &mut self.walkers, phase);
                 }
-                self.kernel.step(&mut self.target, &mut self.walkers, phase);
-            }
-            self.record();
-            for (quantity, values) in self.recorder.outputs.chunks_exact(lanes).enumerate() {
-                for (lane, (block, &value)) in blocks.iter_mut().zip(values).enumerate() {
-                    let none = value.is_nan() || self.ran_away(lane);
-                    block.values[quantity * draws + draw] =
-                        if none { CANONICAL_NAN } else { value };
+                self.record(of_batch);
+                self.blank(of_batch);
+                for drawn in &mut self.drawn {
+                    *drawn += 1;
                 }
             }
-            for drawn in &mut self.drawn {
-                *drawn += 1;
-            }
+            self.unload(&mut blocks, first, batch);
         }
         blocks
     }
