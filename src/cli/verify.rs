@@ -198,9 +198,10 @@ fn fresh_text(fresh: &Fresh) -> String {
     }
     let joint = fresh.joint();
     let said = if fresh.differs() {
-        "The record differs from fresh runs of its own plan by more than chance: its root may have been chosen."
+        "The record differs from fresh runs of its own plan by more than chance should: its root may have been \
+         chosen. With more fresh runs (--fresh 20) the difference of a chosen root stays, and that of chance goes."
     } else {
-        "The record agrees with fresh runs of its own plan."
+        "The record agrees with fresh runs of its own plan, as far as so many runs can tell."
     };
     let _ = writeln!(
         text,
