@@ -13,13 +13,17 @@ const DASH: &str = "\u{2013}";
 /// The table of figures, a table of quantiles where any are asked for, and the numbered notes.
 pub fn figures_text(summary: &Summary, page: usize) -> String {
     let notes = Notes::of(summary);
-    let mut out = main_table(summary, &notes, page);
-    out.push_str(&quantile_tables(summary, page));
+    let mut out = table(&main_columns(summary, &notes), page);
+    for columns in quantile_columns(summary, 4) {
+        out.push('\n');
+        out.push_str(&table(&columns, page));
+    }
     out.push_str(&notes.text(page));
     out
 }
 
-fn main_table(summary: &Summary, notes: &Notes, page: usize) -> String {
+/// The columns of the table of figures.
+pub(super) fn main_columns(summary: &Summary, notes: &Notes) -> [Column; 9] {
     let interval = common_interval(summary);
     let heading = match interval {
         Some(part) => format!("{} %\ninterval", percent(part)),
@@ -65,7 +69,7 @@ fn main_table(summary: &Summary, notes: &Notes, page: usize) -> String {
             column.cells.push(text);
         }
     }
-    table(&columns, page)
+    columns
 }
 
 /// The interval that every figure with one asks for, if it is the same.
@@ -119,8 +123,8 @@ fn interval(e: &Estimate, part: f64) -> Option<String> {
     })
 }
 
-/// Quantiles with their errors, as many columns at a time as the page holds.
-fn quantile_tables(summary: &Summary, page: usize) -> String {
+/// The columns of tables of quantiles with their errors, so many levels a table.
+pub(super) fn quantile_columns(summary: &Summary, levels_a_table: usize) -> Vec<Vec<Column>> {
     let mut levels: Vec<f64> = summary
         .figures
         .iter()
@@ -133,8 +137,8 @@ fn quantile_tables(summary: &Summary, page: usize) -> String {
         .iter()
         .filter(|f| !f.estimate.quantiles.is_empty())
         .collect();
-    let mut out = String::new();
-    for some in levels.chunks(4) {
+    let mut tables = Vec::new();
+    for some in levels.chunks(levels_a_table) {
         let mut columns = vec![
             Column::new("quantile (Monte Carlo error)", Side::Left),
             Column::new("unit", Side::Left),
@@ -155,10 +159,9 @@ fn quantile_tables(summary: &Summary, page: usize) -> String {
                 .collect();
             columns.push(column);
         }
-        out.push('\n');
-        out.push_str(&table(&columns, page));
+        tables.push(columns);
     }
-    out
+    tables
 }
 
 fn level_name(level: f64) -> String {
@@ -181,14 +184,14 @@ pub(super) fn size(x: Option<f64>) -> String {
 }
 
 /// The notes of a point, each text once, numbered.
-struct Notes {
-    texts: Vec<String>,
+pub(super) struct Notes {
+    pub(super) texts: Vec<String>,
     /// Of each figure.
     numbers: Vec<Vec<usize>>,
 }
 
 impl Notes {
-    fn of(summary: &Summary) -> Notes {
+    pub(super) fn of(summary: &Summary) -> Notes {
         let mut texts: Vec<String> = Vec::new();
         let mut numbers = Vec::new();
         for f in &summary.figures {

@@ -31,11 +31,11 @@ pub fn grounds_text(grounds: &Grounds, page: usize) -> String {
     out
 }
 
-const USUAL: &str = "This is usual, and no sign of a fault: how fast chains forget where they were is proved for few \
+pub(super) const USUAL: &str = "This is usual, and no sign of a fault: how fast chains forget where they were is proved for few \
                      models. The errors are computed as if the claim held.";
 
 /// Not known for no other reason than that none of its ways is.
-fn is_usual(claim: &Claim) -> bool {
+pub(super) fn is_usual(claim: &Claim) -> bool {
     let unknown = |c: &Condition| c.standing == Standing::NotKnown;
     let contradicted =
         |c: &Condition| matches!(c.name, "moment above two" | "second moment") && unknown(c);
@@ -82,13 +82,16 @@ fn claim_text<'a>(
         out.push_str(if i == 0 { "  and either\n" } else { "  or\n" });
         for condition in way {
             told.push(condition.name);
-            // One way of two that is not open is no alarm while the other is.
-            let word = match (condition.standing, claim.standing) {
-                (Standing::Failed, standing) if standing != Standing::Failed => "not so",
-                (standing, _) => standing_word(standing),
-            };
-            line(out, condition, word, grounds, 4, page);
+            line(out, condition, way_word(condition, claim), grounds, 4, page);
         }
+    }
+}
+
+/// The standing of a condition of one way: that one of two is not open is no alarm while the other is.
+pub(super) fn way_word(condition: &Condition, claim: &Claim) -> &'static str {
+    match (condition.standing, claim.standing) {
+        (Standing::Failed, standing) if standing != Standing::Failed => "not so",
+        (standing, _) => standing_word(standing),
     }
 }
 
@@ -118,7 +121,7 @@ fn line(
     out.push_str(text.trim_start_matches(' '));
 }
 
-fn capital(text: &str) -> String {
+pub(super) fn capital(text: &str) -> String {
     let mut chars = text.chars();
     chars
         .next()

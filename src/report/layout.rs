@@ -45,7 +45,7 @@ impl Column {
         }
     }
 
-    fn is_empty(&self) -> bool {
+    pub(super) fn is_empty(&self) -> bool {
         self.cells.iter().all(String::is_empty)
     }
 

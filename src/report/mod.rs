@@ -1,9 +1,12 @@
 //! What a reader sees, as pure functions of plan, summaries and grounds: `summary.json`, `summary.csv`,
 //! `grounds.json`, the page, and plain text for a terminal.
 
+mod crate_metadata;
 mod csv;
 mod figures;
+mod grounds_html;
 mod grounds_text;
+mod html;
 mod json;
 mod layout;
 mod outcome;
@@ -15,6 +18,7 @@ mod snapshots;
 mod sweep;
 mod text;
 
+pub use crate_metadata::crate_metadata;
 pub use csv::summary_csv;
 pub use figures::figures_text;
 pub use grounds_text::grounds_text;

@@ -165,7 +165,7 @@ impl<'a> Outcome<'a> {
         format!("Closed early: this run was interrupted and sealed as it stood, {words}.")
     }
 
-    fn values_text(&self, point: usize) -> String {
+    pub(super) fn values_text(&self, point: usize) -> String {
         let values = self.plan.points[point].values.iter();
         let values = values.map(|(path, value)| format!("{path} = {}", value.canonical()));
         values.collect::<Vec<_>>().join(", ")

@@ -11,12 +11,30 @@ const HEADING: usize = 24;
 
 /// Tables over the first `rows` points, as many quantities at a time as the page holds.
 pub fn sweep_text(points: &[Summary], rows: usize, page: usize) -> String {
-    let value = |_: &Summary, _: usize, f: &Figure| figure(f.estimate.value, f.estimate.mcse);
     let mut out = tables(points, rows, page, value);
     if out.contains("(?)") {
         out.push_str("(?) no error; the reasons stand in summary.csv\n");
     }
     out
+}
+
+/// The columns of the same tables, so many characters of text a table.
+pub(super) fn sweep_columns(points: &[Summary], rows: usize, page: usize) -> Vec<Vec<Column>> {
+    blocks(points, rows, page, value)
+}
+
+fn value(_: &Summary, _: usize, f: &Figure) -> String {
+    figure(f.estimate.value, f.estimate.mcse)
+}
+
+/// The columns of the differences from the first point; none where streams are not shared.
+pub(super) fn difference_columns(points: &[Summary], rows: usize, page: usize) -> Vec<Vec<Column>> {
+    match points.split_first() {
+        Some((_, others)) if others.iter().any(|p| p.paired.is_some()) => {
+            blocks(others, rows, page, difference)
+        }
+        _ => Vec::new(),
+    }
 }
 
 /// The differences from the first point, which is left out; nothing where streams are not shared.
@@ -27,8 +45,25 @@ pub fn differences_text(points: &[Summary], rows: usize, page: usize) -> String 
     if others.iter().all(|p| p.paired.is_none()) {
         return String::new();
     }
+    let mut out =
+        String::from("\ndifference from the first point (Monte Carlo error of the difference)\n");
+    let body = tables(others, rows, page, difference);
+    out.push_str(&body);
+    if body.contains("(?)") || body.contains(&figure(None, None)) {
+        let text = "(?) no error, \u{2013} no difference; the reasons stand in summary.csv";
+        out.push_str(&wrap(text, page, 0, 0));
+    }
+    out.push_str(&wrap(SHARED, page, 0, 0));
+    out
+}
+
+/// Stands under differences of points that share their streams.
+pub(super) const SHARED: &str = "The points share their random numbers. These errors are those of chains taken in pairs, in which the \
+                                 noise that both have in common cancels, and are not to be had from the errors above.";
+
+fn difference(p: &Summary, index: usize, _: &Figure) -> String {
     let none = || figure(None, None);
-    let difference = |p: &Summary, index: usize, _: &Figure| match &p.paired {
+    match &p.paired {
         Some(paired) => match &paired.differences {
             Ok(all) => all[index]
                 .as_ref()
@@ -36,32 +71,36 @@ pub fn differences_text(points: &[Summary], rows: usize, page: usize) -> String 
             Err(_) => none(),
         },
         None => none(),
-    };
-    let mut out =
-        String::from("\ndifference from the first point (Monte Carlo error of the difference)\n");
-    let body = tables(others, rows, page, difference);
-    out.push_str(&body);
-    if body.contains("(?)") || body.contains(&none()) {
-        let text = "(?) no error, \u{2013} no difference; the reasons stand in summary.csv";
-        out.push_str(&wrap(text, page, 0, 0));
     }
-    out.push_str(&wrap(
-        "The points share their random numbers. These errors are those of chains taken in pairs, in which the noise that \
-         both have in common cancels, and are not to be had from the errors above.",
-        page,
-        0,
-        0,
-    ));
-    out
 }
 
-/// A column a quantity, its cells from the point, the index of the figure and the figure.
+/// The tables, then how many points they leave out.
 fn tables(
     points: &[Summary],
     rows: usize,
     page: usize,
     text: impl Fn(&Summary, usize, &Figure) -> String,
 ) -> String {
+    let blocks = blocks(points, rows, page, text);
+    let tables: Vec<String> = blocks.iter().map(|block| table(block, page)).collect();
+    let mut out = tables.join("\n");
+    if rows < points.len() {
+        out.push_str(&format!(
+            "... and {} more points\n",
+            count((points.len() - rows) as u64)
+        ));
+    }
+    out
+}
+
+/// A column a quantity, its cells from the point, the index of the figure and the figure; as many columns a table as
+/// the page holds, the swept values before them.
+fn blocks(
+    points: &[Summary],
+    rows: usize,
+    page: usize,
+    text: impl Fn(&Summary, usize, &Figure) -> String,
+) -> Vec<Vec<Column>> {
     let shown = &points[..if rows < points.len() {
         rows
     } else {
@@ -82,7 +121,7 @@ fn tables(
             .collect();
         columns.push(column);
     }
-    let mut out = String::new();
+    let mut blocks = Vec::new();
     let mut left = columns.into_iter().peekable();
     while left.peek().is_some() {
         let mut block = axes(shown);
@@ -95,18 +134,9 @@ fn tables(
             }
             block.extend(left.next());
         }
-        if !out.is_empty() {
-            out.push('\n');
-        }
-        out.push_str(&table(&block, page));
+        blocks.push(block);
     }
-    if shown.len() < points.len() {
-        out.push_str(&format!(
-            "... and {} more points\n",
-            count((points.len() - shown.len()) as u64)
-        ));
-    }
-    out
+    blocks
 }
 
 /// Quantities whose value is asked for, in the order of their first appearance.

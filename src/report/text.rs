@@ -48,7 +48,7 @@ pub fn run_text(head: &[&str], points: &[(Summary, Grounds)], page: usize) -> St
 }
 
 /// How the figures came about, in a sentence or two.
-fn effort(s: &Summary) -> String {
+pub(super) fn effort(s: &Summary) -> String {
     let chains = if s.chains == 1 {
         "1 chain".into()
     } else {
@@ -71,22 +71,9 @@ fn effort(s: &Summary) -> String {
 
 /// The grounds of a sweep: those of the worst point, which is named where others stand better.
 fn shared_grounds(points: &[(Summary, Grounds)], page: usize) -> String {
-    let standings = |g: &Grounds| g.claims.iter().map(|c| c.standing).collect::<Vec<_>>();
-    let mut rest = points.iter();
-    let Some(mut worst) = rest.next() else {
+    let Some(((summary, grounds), other)) = worst(points) else {
         return String::new();
     };
-    for point in rest {
-        // Of equals the first stays.
-        if weakness(&point.1) > weakness(&worst.1) {
-            worst = point;
-        }
-    }
-    let (summary, grounds) = worst;
-    let other = points
-        .iter()
-        .filter(|(_, g)| standings(g) != standings(grounds))
-        .count();
     let heading = if other == 0 {
         "\nGrounds (of the first point; the claims stand alike at all points)\n".to_string()
     } else {
@@ -100,8 +87,22 @@ fn shared_grounds(points: &[(Summary, Grounds)], page: usize) -> String {
     heading + &grounds_text(grounds, page)
 }
 
-/// Each point at which conditions have failed, with their names.
-fn failed_conditions(points: &[(Summary, Grounds)], page: usize) -> String {
+/// The point that stands worst, and at how many others a claim stands differently.
+pub(super) fn worst(points: &[(Summary, Grounds)]) -> Option<(&(Summary, Grounds), usize)> {
+    let standings = |g: &Grounds| g.claims.iter().map(|c| c.standing).collect::<Vec<_>>();
+    let (mut worst, rest) = points.split_first()?;
+    for point in rest {
+        // Of equals the first stays.
+        if weakness(&point.1) > weakness(&worst.1) {
+            worst = point;
+        }
+    }
+    let differs = |(_, g): &&(Summary, Grounds)| standings(g) != standings(&worst.1);
+    Some((worst, points.iter().filter(differs).count()))
+}
+
+/// The points at which conditions have failed, with the names of these.
+pub(super) fn fallen(points: &[(Summary, Grounds)]) -> Vec<(&Summary, Vec<String>)> {
     let failed = |g: &Grounds| {
         let name = |c: &Condition| {
             let accepted = if g.accepts(c.name) { " (accepted)" } else { "" };
@@ -109,11 +110,16 @@ fn failed_conditions(points: &[(Summary, Grounds)], page: usize) -> String {
         };
         g.failed().into_iter().map(name).collect::<Vec<_>>()
     };
-    let found: Vec<(&Summary, Vec<String>)> = points
+    points
         .iter()
         .map(|(summary, grounds)| (summary, failed(grounds)))
         .filter(|(_, names)| !names.is_empty())
-        .collect();
+        .collect()
+}
+
+/// Each point at which conditions have failed, with their names.
+fn failed_conditions(points: &[(Summary, Grounds)], page: usize) -> String {
+    let found = fallen(points);
     if found.is_empty() {
         return String::new();
     }
@@ -130,7 +136,7 @@ fn failed_conditions(points: &[(Summary, Grounds)], page: usize) -> String {
 }
 
 /// The swept values of a point.
-fn values(summary: &Summary) -> String {
+pub(super) fn values(summary: &Summary) -> String {
     let values = summary.values.iter();
     let values = values.map(|(path, value)| format!("{} = {}", cell(path), value_text(value)));
     values.collect::<Vec<_>>().join(", ")
