@@ -100,6 +100,7 @@ fn folder_of(into: &Path) -> PathBuf {
     let mut found: Vec<PathBuf> = fs::read_dir(into.join("leaning"))
         .expect("results")
         .map(|entry| entry.expect("an entry").path())
+        .filter(|path| path.is_dir())
         .collect();
     assert_eq!(found.len(), 1, "{found:?}");
     found.remove(0)
@@ -261,8 +262,13 @@ fn wait_for(into: &Path, enough: impl Fn(u64) -> bool) {
     let begun = Instant::now();
     loop {
         let open = fs::read_dir(into.join("leaning")).ok();
-        let entry = open.and_then(|mut entries| entries.next());
-        let journal = entry.and_then(|entry| fs::metadata(entry.ok()?.path().join("journal")).ok());
+        let mut paths = open
+            .into_iter()
+            .flatten()
+            .flatten()
+            .map(|entry| entry.path());
+        let folder = paths.find(|path| path.is_dir());
+        let journal = folder.and_then(|folder| fs::metadata(folder.join("journal")).ok());
         if journal.is_some_and(|journal| enough(journal.len())) {
             return;
         }

@@ -11,6 +11,7 @@ use crate::engine::{
     paired,
 };
 use crate::estimates::count;
+use crate::plan::Plan;
 use crate::record::{self, Circumstances, Cut, Entry, Folder, JournalFile, Open, RecordFault};
 use std::num::NonZeroUsize;
 use std::path::Path;
@@ -140,7 +141,16 @@ fn prepare(
         ));
     }
     keep_study(read, open)?;
-    Circumstances::begin(open, threads)
+    begin(open, &read.plan, threads)
+}
+
+/// Enters a start in the circumstances, and tells what is wrong with the list of runs begun.
+pub fn begin(open: &Open, plan: &Plan, threads: usize) -> Result<Circumstances, RecordFault> {
+    let circumstances = Circumstances::begin(open, plan, threads)?;
+    if let Some(warning) = &circumstances.warning {
+        tell(&format!("warning: {warning}"));
+    }
+    Ok(circumstances)
 }
 
 /// Study, inputs and plan into the folder.

@@ -2,7 +2,9 @@
 
 use super::outcome::{self, Filed};
 use super::output::tell;
-use super::run::{all_threads, cut_words, halted, keep_study, report, tell_not_filed, tell_record};
+use super::run::{
+    all_threads, begin, cut_words, halted, keep_study, report, tell_not_filed, tell_record,
+};
 use super::signals;
 use super::status::Status;
 use super::study::{self, Read};
@@ -102,7 +104,7 @@ fn file_closed(
     let begun = || -> Result<Circumstances, RecordFault> {
         keep_study(closed, &open)?;
         Circumstances::follow(&open, run)?;
-        let mut circumstances = Circumstances::begin(&open, threads)?;
+        let mut circumstances = begin(&open, &closed.plan, threads)?;
         let of = [
             ("run", Json::text(canon::hex(&plan.digest()))),
             ("blocks", Json::Count(run.journal.stood)),

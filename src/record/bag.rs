@@ -73,6 +73,19 @@ pub fn write(folder: &Path, title: &str, result_digest: &str) -> Result<(), Reco
     fs::write(&path, tags).map_err(|fault| RecordFault::disk("write", &path, &fault))
 }
 
+/// The path under `data/` of every file there, sorted, and its length.
+pub fn payload(folder: &Path) -> Result<Vec<(String, u64)>, RecordFault> {
+    let mut files = Vec::new();
+    for (name, path) in walk(folder)?.files {
+        if let Some(name) = name.strip_prefix("data/") {
+            let size =
+                fs::metadata(&path).map_err(|fault| RecordFault::disk("read", &path, &fault))?;
+            files.push((name.to_owned(), size.len()));
+        }
+    }
+    Ok(files)
+}
+
 /// Holds a bag against its lists. Gives every difference, none when it is whole.
 ///
 /// # Errors
@@ -203,7 +216,7 @@ fn walk(folder: &Path) -> Result<Walked, RecordFault> {
 }
 
 /// In hexadecimal, of a file of any length; and the length.
-fn sha256(path: &Path) -> io::Result<(String, u64)> {
+pub(super) fn sha256(path: &Path) -> io::Result<(String, u64)> {
     let mut file = File::open(path)?;
     let mut hash = Sha256::new();
     let mut chunk = vec![0; CHUNK];

@@ -1,10 +1,13 @@
-//! Who worked on a run, when, where and with what: one entry a start. Outside every digest.
+//! Who worked on a run, when, where and with what: one entry a start; and the runs begun before it under the same
+//! name. Outside every digest.
 
 use super::bag::CIRCUMSTANCES as NAME;
+use super::begun::Begun;
 use super::fault::RecordFault;
 use super::folder::Open;
-use super::moment;
-use crate::canon::Json;
+use super::{moment, program};
+use crate::canon::{Json, hex};
+use crate::plan::Plan;
 use std::fs;
 use std::io;
 
@@ -13,11 +16,14 @@ use std::io;
 pub struct Circumstances {
     earlier: Vec<Json>,
     this: Vec<(String, Json)>,
+    begun: Begun,
+    /// What is wrong with the list of runs begun, in words for the reader.
+    pub warning: Option<String>,
 }
 
 impl Circumstances {
-    /// Enters this start in the folder, after those before.
-    pub fn begin(open: &Open, threads: usize) -> Result<Circumstances, RecordFault> {
+    /// Enters this start in the folder, after those before; the first of a plan also in the list of runs begun.
+    pub fn begin(open: &Open, plan: &Plan, threads: usize) -> Result<Circumstances, RecordFault> {
         let path = open.path().join(NAME);
         let earlier = match fs::read_to_string(&path) {
             // What a power cut left of it before it was forced to the disk.
@@ -29,22 +35,26 @@ impl Circumstances {
             Err(fault) if fault.kind() == io::ErrorKind::NotFound => Vec::new(),
             Err(fault) => return Err(RecordFault::disk("read", &path, &fault)),
         };
-        let text = |name: &str, value: String| (name.to_owned(), Json::text(value));
-        let count = |name: &str, value: u64| (name.to_owned(), Json::Count(value));
         let cut = open.journal.cut;
-        let this = vec![
-            text("began", moment::now()),
-            text("host", moment::host()),
-            text("version", env!("CARGO_PKG_VERSION").to_owned()),
-            text("system", std::env::consts::OS.to_owned()),
-            text("processor", std::env::consts::ARCH.to_owned()),
-            count("process", std::process::id().into()),
-            count("threads", threads as u64),
-            count("blocks_found", open.journal.stood),
-            count("bytes_cut", cut.map_or(0, |cut| cut.bytes)),
-            count("whole_blocks_cut", cut.map_or(0, |cut| cut.behind)),
+        let counts = [
+            ("threads", threads as u64),
+            ("blocks_found", open.journal.stood),
+            ("bytes_cut", cut.map_or(0, |cut| cut.bytes)),
+            ("whole_blocks_cut", cut.map_or(0, |cut| cut.behind)),
         ];
-        let circumstances = Circumstances { earlier, this };
+        let mut this = vec![("began", Json::text(moment::now()))];
+        this.extend(program::members());
+        this.extend(counts.map(|(name, count)| (name, Json::Count(count))));
+        let folder = open.path().parent().unwrap_or(open.path());
+        let begun = Begun::of(folder, &hex(&plan.digest()), &plan.root);
+        let warning = begun.begins().err();
+        let this = this.into_iter();
+        let circumstances = Circumstances {
+            earlier,
+            this: this.map(|(name, what)| (name.to_owned(), what)).collect(),
+            begun,
+            warning,
+        };
         circumstances.save(open)?;
         Ok(circumstances)
     }
@@ -65,17 +75,26 @@ impl Circumstances {
         self.this.push((name.into(), what));
     }
 
-    /// Enters how this start ended.
-    pub fn end(mut self, open: &Open, outcome: &str) -> Result<(), RecordFault> {
+    /// Enters how this start ended, and the runs of other plans begun under this name. Gives what stands in the
+    /// file.
+    pub fn end(mut self, open: &Open, outcome: &str) -> Result<Json, RecordFault> {
         self.this.push(("ended".into(), Json::text(moment::now())));
         self.this.push(("outcome".into(), Json::text(outcome)));
+        // What is wrong with that list was told when the run began, and stands in the file.
+        let _ = self.begun.ends(outcome);
         self.save(open)
     }
 
-    fn save(&self, open: &Open) -> Result<(), RecordFault> {
+    fn save(&self, open: &Open) -> Result<Json, RecordFault> {
         let mut starts = self.earlier.clone();
         starts.push(Json::object(self.this.clone()));
-        let all = Json::object([("starts", Json::Array(starts))]);
-        open.write(NAME, all.pretty().as_bytes())
+        let (runs, fault) = self.begun.earlier();
+        let all = Json::object([
+            ("starts", Json::Array(starts)),
+            ("earlier_runs", runs),
+            ("earlier_runs_fault", fault.map_or(Json::Null, Json::text)),
+        ]);
+        open.write(NAME, all.pretty().as_bytes())?;
+        Ok(all)
     }
 }

@@ -1,6 +1,7 @@
 //! The folder that a run leaves: its lock and journal while it is worked on, the record when it is sealed.
 
 mod bag;
+mod begun;
 pub mod checkpoints;
 mod circumstances;
 mod columnar;
@@ -13,6 +14,7 @@ mod inputs;
 mod journal;
 mod lock;
 mod moment;
+mod program;
 mod room;
 mod scan;
 mod seal;
@@ -20,7 +22,7 @@ pub mod survey;
 mod sync;
 pub mod trail_file;
 
-pub use bag::check as check_bag;
+pub use bag::{CIRCUMSTANCES, check as check_bag, payload};
 pub use checkpoints::Checkpoints;
 pub use circumstances::Circumstances;
 pub use draws_file::DrawsFile;
@@ -31,4 +33,4 @@ pub use inputs::{keep as keep_inputs, kept};
 pub use journal::JournalFile;
 pub use room::{Needs, check as check_room, needs, size};
 pub use scan::Cut;
-pub use seal::{Sealing, seal, starts};
+pub use seal::{CRATE_METADATA, Sealing, seal, starts};

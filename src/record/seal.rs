@@ -12,10 +12,14 @@ use crate::course::{Phase, Quantity};
 use crate::engine::trail::{self, Digest, StateHash};
 use crate::engine::{Journal, Reader, Stood, Task};
 use crate::plan::{CHECKPOINT_BYTES, Keep, Plan};
+use crate::report;
 use std::collections::BTreeMap;
 use std::fs;
 use std::io;
 use std::path::{Path, PathBuf};
+
+/// The record's files and its run, for archives.
+pub const CRATE_METADATA: &str = "data/ro-crate-metadata.json";
 
 /// What is sealed beside the draws.
 pub struct Sealing<'a> {
@@ -68,7 +72,11 @@ pub fn seal(
     for (name, bytes) in &sealing.files {
         open.write(name, bytes)?;
     }
-    circumstances.end(&open, "sealed")?;
+    let circumstances = circumstances.end(&open, "sealed")?;
+    let files = bag::payload(open.path())?;
+    let crate_metadata =
+        report::crate_metadata(sealing.plan, &sealing.result_digest, &circumstances, &files);
+    open.write(CRATE_METADATA, crate_metadata.pretty().as_bytes())?;
     bag::write(open.path(), &sealing.plan.title, &sealing.result_digest)?;
     open.finish()
 }

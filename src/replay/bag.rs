@@ -19,7 +19,7 @@ pub fn strangers(folder: &Path, opened: &Opened, rendered: &[&str]) -> Vec<Strin
         [
             "data/study.toml",
             "data/inputs.json",
-            "data/ro-crate-metadata.json",
+            record::CRATE_METADATA,
         ]
         .map(String::from),
     );

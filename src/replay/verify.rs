@@ -8,7 +8,8 @@ use super::{again, bag, blocks, difference, draws, figures};
 use crate::canon::{self, Json};
 use crate::course::Family;
 use crate::plan::Keep;
-use crate::report::Outcome;
+use crate::record;
+use crate::report::{Outcome, crate_metadata};
 use std::fs;
 use std::path::Path;
 use std::sync::atomic::AtomicBool;
@@ -151,7 +152,7 @@ fn made(
         match name {
             "data/plan.json" => {}
             "data/summary.json" | "data/grounds.json" | "data/failed.json" => {
-                of_figures.extend(differing_json(folder, name, &bytes));
+                of_figures.extend(differing_json(folder, name, &bytes, "the draws give"));
             }
             _ => of_pages.extend(differing_text(folder, name, &bytes)),
         }
@@ -159,6 +160,7 @@ fn made(
     if outcome.failed.is_empty() && folder.join("data/failed.json").exists() {
         of_figures.push("data/failed.json: no point failed".into());
     }
+    of_pages.extend(crate_differs(folder, &outcome, &account.result_digest));
     let digest = &account.result_digest;
     let looked_at = format!("every figure and standing comes out the same; result digest {digest}");
     account.enter(Part::Figures, of_figures, looked_at);
@@ -166,14 +168,33 @@ fn made(
     account.enter(Part::Pages, of_pages, looked_at);
 }
 
-fn differing_json(folder: &Path, name: &str, made: &[u8]) -> Vec<String> {
+/// The metadata made anew from the plan, the circumstances and the files that are there.
+fn crate_differs(folder: &Path, outcome: &Outcome<'_>, result_digest: &str) -> Vec<String> {
+    let circumstances = match opened::json(folder, record::CIRCUMSTANCES) {
+        Ok(circumstances) => circumstances,
+        Err(words) => return vec![words],
+    };
+    let files = match record::payload(folder) {
+        Ok(files) => files,
+        Err(fault) => return vec![fault.to_string()],
+    };
+    let made = crate_metadata(outcome.plan, result_digest, &circumstances, &files);
+    differing_json(
+        folder,
+        record::CRATE_METADATA,
+        made.pretty().as_bytes(),
+        "plan, circumstances and files give",
+    )
+}
+
+fn differing_json(folder: &Path, name: &str, made: &[u8], given: &str) -> Vec<String> {
     let made = std::str::from_utf8(made).expect("we write UTF-8");
     let made = Json::read(made).expect("we write JSON");
     let named = |words: String| format!("{name}: {words}");
     match opened::json(folder, name) {
         Err(words) => vec![words],
         Ok(stored) => {
-            let found = difference::json(&stored, &made, "the draws give");
+            let found = difference::json(&stored, &made, given);
             let mut found: Vec<String> = found.into_iter().map(named).collect();
             if found.is_empty() {
                 found.extend(differing_text(folder, name, made.pretty().as_bytes()));

@@ -104,7 +104,7 @@ fn marks(outcome: &Outcome<'_>) -> String {
         ));
     }
     if plan.closed.is_some() {
-        mark("The run was closed before its plan ended it; the figures are of the draws made until then.".into());
+        mark(outcome.closed_text());
     }
     let missed = |(summary, _): &&(Summary, Grounds)| summary.goal == GoalState::Missed;
     match (
