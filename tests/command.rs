@@ -240,7 +240,7 @@ fn a_finished_run_whose_files_changed_is_4_and_tells_no_figures() {
         }
     };
     let listed = files(&done.join("data"));
-    assert_eq!(listed.len(), 13, "{listed:?}");
+    assert_eq!(listed.len(), 14, "{listed:?}");
     for path in &listed {
         let kept = fs::read(path).unwrap();
         let mut flipped = kept.clone();

@@ -97,7 +97,8 @@ fn records(folder: &Path) -> Vec<PathBuf> {
     let entries = fs::read_dir(folder.join("results/leaning"))
         .into_iter()
         .flatten();
-    let mut all: Vec<PathBuf> = entries.map(|entry| entry.unwrap().path()).collect();
+    let paths = entries.map(|entry| entry.unwrap().path());
+    let mut all: Vec<PathBuf> = paths.filter(|path| path.is_dir()).collect();
     all.sort();
     all
 }

@@ -254,4 +254,48 @@ mod tests {
         assert_eq!(offset("then"), "then");
         assert!(is_used("inputs/a.csv") && is_used("study.toml") && !is_used("plan.json"));
     }
+
+    #[test]
+    fn every_file_is_used_or_made_and_told_once() {
+        let plan = crate::plan::sample();
+        let start = |began: &str, ended: &str| {
+            Json::object([
+                ("began", Json::text(began)),
+                ("ended", Json::text(ended)),
+                ("outcome", Json::text("sealed")),
+                ("version", Json::text("0.1.0")),
+                ("executable_sha256", Json::text("ab")),
+            ])
+        };
+        let starts = [
+            start("2026-12-01T13:00:00Z", "2026-12-01T13:10:00Z"),
+            start("2026-12-01T14:00:00Z", "2026-12-01T14:30:00Z"),
+        ];
+        let circumstances = Json::object([("starts", Json::array(starts))]);
+        let files = ["inputs/a b.csv", "plan.json", SELF, "study.toml"];
+        let files = files.map(|name| (name.to_owned(), 7));
+        let made = crate_metadata(&plan, "cd", &circumstances, &files);
+        let read: serde_json::Value = serde_json::from_str(&made.canonical()).expect("JSON");
+        let graph = read["@graph"].as_array().expect("entities");
+        let find = |id: &str| {
+            let mut found = graph.iter().filter(|entity| entity["@id"] == id);
+            let one = found.next().unwrap_or_else(|| panic!("no {id}"));
+            assert!(found.next().is_none(), "{id} is told twice");
+            one
+        };
+        let run = find(RUN);
+        assert_eq!(run["object"][0]["@id"], "inputs/a%20b.csv");
+        assert_eq!(run["object"][1]["@id"], "study.toml");
+        assert_eq!(run["result"][0]["@id"], "plan.json");
+        assert_eq!(run["startTime"], "2026-12-01T13:00:00+00:00");
+        assert_eq!(run["endTime"], "2026-12-01T14:30:00+00:00");
+        assert_eq!(run["instrument"]["@id"], "nih:sha-256;ab");
+        assert_eq!(find("nih:sha-256;ab")["version"], "0.1.0");
+        assert_eq!(find("./")["hasPart"].as_array().map(Vec::len), Some(3));
+        assert_eq!(find("#result-digest")["value"], "cd");
+        assert_eq!(find("inputs/a%20b.csv")["name"], "inputs/a b.csv");
+        // A stranger's circumstances may say nothing at all.
+        let made = crate_metadata(&plan, "cd", &Json::Null, &files);
+        assert!(made.canonical().contains("#odograph"));
+    }
 }

@@ -271,3 +271,85 @@ fn seal(keep: Keep) -> String {
         .map(|text| element("p", text))
         .concat()
 }
+
+#[cfg(test)]
+mod tests {
+    use super::super::samples;
+    use super::*;
+    use crate::plan::{self, Accepted, Plan};
+
+    fn outcome(plan: &Plan, summaries: Vec<Summary>) -> Outcome<'_> {
+        let mut outcome = Outcome::of(plan, &[], Vec::new());
+        outcome.points = summaries
+            .into_iter()
+            .map(|summary| {
+                let grounds = samples::standings(&summary);
+                (summary, grounds)
+            })
+            .collect();
+        outcome
+    }
+
+    #[test]
+    fn nothing_that_a_study_says_becomes_a_tag_or_leads_out() {
+        let evil = "<script>alert(1)</script><img src=\"https://x.example/\" onerror='y'>";
+        let mut plan = plan::sample();
+        (plan.title, plan.question, plan.root) = (evil.into(), evil.into(), evil.into());
+        plan.accepted = Accepted {
+            conditions: vec![evil.into()],
+            because: evil.into(),
+        };
+        let mut summary = samples::summary();
+        (summary.figures[0].name, summary.figures[0].unit) = (evil.into(), Some(evil.into()));
+        summary.advice = Some(evil.into());
+        let mut outcome = outcome(&plan, vec![summary]);
+        outcome.points[0].1.claims[0].conditions[0].evidence = evil.into();
+        outcome.failed.push((0, evil.into()));
+        let page = report_html(&outcome);
+        for tag in ["<script", "<img", "src=\"", "onerror='"] {
+            assert!(!page.contains(tag), "{tag} stands in the page");
+        }
+        assert!(page.matches("&lt;script&gt;").count() >= 9);
+        let links = page.split("href=\"").skip(1);
+        for link in links {
+            let own = [
+                "study.toml",
+                "summary.csv",
+                "summary.json",
+                "../circumstances.json",
+            ];
+            assert!(own.iter().any(|own| link.starts_with(own)), "{link:.30}");
+        }
+    }
+
+    #[test]
+    fn what_was_accepted_or_missed_stands_before_the_figures() {
+        let mut plan = plan::sample();
+        plan.accepted = Accepted {
+            conditions: vec!["finite mass".into()],
+            because: "the counts bound b".into(),
+        };
+        let page = report_html(&outcome(&plan, vec![samples::summary()]));
+        let at = |text: &str| page.find(text).unwrap_or_else(|| panic!("no {text:?}"));
+        let figures = at("<h2>Figures</h2>");
+        assert!(at("because: the counts bound b") < figures);
+        assert!(at("The goal was missed.") < figures);
+        assert!(at(">0.05983(27)<") > figures);
+        assert!(at("no other study or root was tried") > figures);
+        assert!(at("licensed practice decide") > figures);
+    }
+
+    #[test]
+    fn a_long_sweep_is_cut_and_says_so() {
+        let plan = plan::sample();
+        let sweep = samples::sweep();
+        let long: Vec<Summary> = sweep.iter().cycle().take(1_000).cloned().collect();
+        let page = report_html(&outcome(&plan, long));
+        assert!(page.contains("The first 200 of 1,000 points are shown"));
+        assert!(page.contains("The first 24 of 1,000 points are shown"));
+        assert_eq!(page.matches("<details>").count(), IN_FULL);
+        assert!(page.len() < 400_000, "{} bytes", page.len());
+        let short = report_html(&outcome(&plan, sweep));
+        assert!(!short.contains("points are shown"));
+    }
+}
