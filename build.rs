@@ -1,6 +1,12 @@
 //! Tells the program with what it was built: compiler, target and, of a release, the commit. Nothing of it reaches a
 //! digit. Without git or outside a clone the commit is not known, and the build goes on.
 
+#![expect(
+    clippy::disallowed_macros,
+    clippy::disallowed_methods,
+    reason = "a build script speaks to cargo by its output and is asked by the environment"
+)]
+
 use std::env;
 use std::fs;
 use std::path::{Path, PathBuf};
