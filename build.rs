@@ -46,7 +46,6 @@ fn commit(git: &Path) -> Option<String> {
         None => head.trim().to_owned(),
         Some(name) => {
             watch(&shared.join(name));
-            watch(&shared.join("packed-refs"));
             let loose = fs::read_to_string(shared.join(name)).ok();
             loose.or_else(|| packed(&shared, name))?.trim().to_owned()
         }
@@ -71,8 +70,10 @@ fn folders(git: &Path) -> Option<(PathBuf, PathBuf)> {
 }
 
 fn packed(shared: &Path, name: &str) -> Option<String> {
-    let list = fs::read_to_string(shared.join("packed-refs")).ok()?;
-    list.lines().find_map(|line| {
+    let list = shared.join("packed-refs");
+    let text = fs::read_to_string(&list).ok()?;
+    watch(&list);
+    text.lines().find_map(|line| {
         line.strip_suffix(name)?
             .strip_suffix(' ')
             .map(str::to_owned)
