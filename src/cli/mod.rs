@@ -15,6 +15,7 @@ mod seal;
 mod signals;
 mod status;
 mod study;
+mod taken;
 mod verify;
 
 pub use own_fault::watch as watch_own_faults;

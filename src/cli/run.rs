@@ -6,6 +6,7 @@ use super::progress::Progress;
 use super::signals;
 use super::status::Status;
 use super::study::{self, Read};
+use super::taken;
 use crate::engine::{
     Event, Finished, Halt, Journal, Mark, Orders, PlanJudge, Reader, Sink, Stood, Task, conduct,
     paired,
@@ -80,8 +81,12 @@ fn work(read: &Read, mut open: Open, threads: usize) -> Result<Filed, Status> {
     let plan = &read.plan;
     let tasks = Task::all(plan);
     let ready = prepare(read, &tasks, &open, threads);
-    let circumstances = ready.map_err(|fault| tell_record(&fault))?;
+    let mut circumstances = ready.map_err(|fault| tell_record(&fault))?;
     signals::watch();
+    if open.journal.stood == 0 {
+        taken::take_over(plan, &tasks, &mut open, &mut circumstances)
+            .map_err(|fault| tell_record(&fault))?;
+    }
     let mut desk = Desk {
         journal: &mut open.journal,
         progress: Progress::new(),

@@ -106,7 +106,7 @@ impl<'s> Active<'s> {
         self.target
     }
 
-    /// Enters the blocks that stand for all chains of a course.
+    /// Enters the blocks that all chains of a course go on from.
     pub(super) fn stands(&mut self, range: Range<usize>, stood: &[Vec<Stood>]) {
         let common = common(stood);
         for (chain, blocks) in range.zip(stood) {

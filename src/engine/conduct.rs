@@ -5,7 +5,7 @@ use super::active::{Active, Next};
 use super::halt::Halt;
 use super::judge::{Judge, Settling, Verdict};
 use super::lanes;
-use super::sink::{Event, Reader, Sink};
+use super::sink::{Event, Reader, Sink, Stood};
 use super::task::Task;
 use super::walk::{Kept, Step, Walk};
 use crate::course::Phase;
@@ -237,13 +237,17 @@ impl<'s, J: Judge> Desk<'_, 's, J> {
 
     fn begin(&mut self, point: usize) {
         let task = &self.crew.tasks[point];
-        let ranges = lanes::split(task.chains.len(), self.lanes);
+        let mut stood: Vec<Vec<Stood>> = (0..task.chains.len())
+            .map(|chain| self.sink.standing(point, chain))
+            .collect();
+        let begun: Vec<bool> = stood.iter().map(|blocks| !blocks.is_empty()).collect();
+        let ranges = lanes::courses(&begun, self.lanes);
         let mut active = Active::new(point, task, ranges.len());
         let mut stood_in_all = 0;
         for range in ranges {
-            let stood: Vec<_> = range
-                .clone()
-                .map(|chain| self.sink.standing(point, chain))
+            let stood: Vec<_> = stood[range.clone()]
+                .iter_mut()
+                .map(std::mem::take)
                 .collect();
             stood_in_all += stood.iter().map(|blocks| blocks.len() as u64).sum::<u64>();
             active.stands(range.clone(), &stood);

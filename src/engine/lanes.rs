@@ -20,6 +20,19 @@ pub fn split(chains: usize, lanes: usize) -> Vec<Range<usize>> {
         .collect()
 }
 
+/// The courses of a point's chains: those that have blocks behind them apart from those at their start, so that none
+/// of them begins anew.
+pub fn courses(begun: &[bool], lanes: usize) -> Vec<Range<usize>> {
+    let mut courses = Vec::new();
+    let mut from = 0;
+    for alike in begun.chunk_by(|a, b| a == b) {
+        let own = split(alike.len(), lanes).into_iter();
+        courses.extend(own.map(|course| from + course.start..from + course.end));
+        from += alike.len();
+    }
+    courses
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -38,6 +51,15 @@ mod tests {
                 assert_eq!(next, chains);
             }
         }
+    }
+
+    #[test]
+    fn chains_with_blocks_do_not_share_a_course_with_those_without() {
+        let begun = [true, true, true, false, false];
+        assert_eq!(courses(&begun, 8), [0..3, 3..5]);
+        assert_eq!(courses(&begun, 2), [0..1, 1..3, 3..5]);
+        assert_eq!(courses(&[false; 5], 4), split(5, 4));
+        assert!(courses(&[], 4).is_empty());
     }
 
     #[test]

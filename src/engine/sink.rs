@@ -16,9 +16,8 @@ pub struct Finished {
     /// Quantity-major little-endian doubles; see [`super::trail::payload`].
     pub payload: Vec<u8>,
     pub draws_digest: Digest,
-    pub state: State,
-    /// The frozen part differs from the one after the block before.
-    pub frozen_changed: bool,
+    /// The state after it; `None` of a block that an earlier run drew and whose state it did not keep.
+    pub state: Option<State>,
     pub state_hash: StateHash,
     pub link: Digest,
 }
@@ -36,6 +35,8 @@ pub struct Stood {
     pub state_hash: StateHash,
     pub link: Digest,
     pub mark: Mark,
+    /// Whether the state after this block is kept.
+    pub kept: bool,
     /// Where the frozen part of the state after this block is kept.
     pub frozen: Mark,
 }
@@ -56,7 +57,7 @@ pub trait Journal {
 pub trait Reader: Send + Sync {
     /// Appends the draws of one quantity of a block to `into`.
     fn column(&self, mark: Mark, quantity: usize, into: &mut Vec<f64>) -> Result<(), String>;
-    /// The state after a block that stood.
+    /// The state after a block that stood and whose state is kept.
     fn state(&self, block: &Stood) -> Result<State, String>;
 }
 

@@ -40,6 +40,7 @@ impl Journal for Memory {
                 state_hash: block.state_hash,
                 link: block.link,
                 mark: mark(block),
+                kept: block.state.is_some(),
                 frozen: mark(block),
             })
             .collect()
@@ -90,7 +91,8 @@ impl Reader for MemoryReader {
         Ok(())
     }
     fn state(&self, block: &Stood) -> Result<State, String> {
-        Ok(self.0.lock().unwrap()[block.mark.0 as usize].state.clone())
+        let state = self.0.lock().unwrap()[block.mark.0 as usize].state.clone();
+        state.ok_or("its state is not kept".into())
     }
 }
 

@@ -53,7 +53,7 @@ pub struct Walk {
 }
 
 impl Walk {
-    /// The chains of `range` at their starts, or after the last block that stands for all of them.
+    /// The chains of `range` at their starts, or after the last block that stands for all of them with its state.
     /// `stood` has a list for each chain of the range.
     pub fn begin(
         task: &Task,
@@ -99,7 +99,7 @@ impl Walk {
         Ok(walk)
     }
 
-    /// Loads the states after the last block that stands for every chain.
+    /// Loads the states after the last block that stands for every chain and has them kept.
     fn catch_up(&mut self, reader: &Arc<dyn Reader>) -> Result<(), Halt> {
         let stood: Vec<&[Stood]> = self.lanes.iter().map(|lane| &*lane.stood).collect();
         let common = common(&stood);
@@ -251,8 +251,7 @@ impl Lane {
                 draws,
                 payload,
                 draws_digest,
-                state,
-                frozen_changed,
+                state: Some(state),
                 state_hash: self.hash,
                 link: self.link,
             })),

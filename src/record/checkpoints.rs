@@ -29,8 +29,11 @@ fn columns() -> Vec<Column> {
 }
 
 /// The blocks (from 1) after which the states of every chain are kept: every 1st, 2nd, 4th … of each phase,
-/// as many as `bound` bytes hold, and in any case the last of each phase.
-pub fn kept(phases: &[Phase], state: usize, chains: usize, bound: u64) -> Vec<u64> {
+/// as many as `bound` bytes hold, and in any case the last of each phase. `blocks` has the phase of each block, and
+/// whether the states after it are at hand.
+pub fn kept(blocks: &[(Phase, bool)], state: usize, chains: usize, bound: u64) -> Vec<u64> {
+    let phases: Vec<Phase> = blocks.iter().map(|(phase, _)| *phase).collect();
+    let at_hand = |at: usize| blocks[at].1;
     let last_of = |at: usize| phases.get(at + 1) != Some(&phases[at]);
     let burn_in = phases
         .iter()
@@ -45,7 +48,8 @@ pub fn kept(phases: &[Phase], state: usize, chains: usize, bound: u64) -> Vec<u6
     };
     let chosen = |stride: usize| -> Vec<u64> {
         let blocks = 0..phases.len();
-        let blocks = blocks.filter(|&at| within(at).is_multiple_of(stride) || last_of(at));
+        let blocks =
+            blocks.filter(|&at| (within(at).is_multiple_of(stride) && at_hand(at)) || last_of(at));
         blocks.map(|at| at as u64 + 1).collect()
     };
     let mut stride = 1;
@@ -105,6 +109,13 @@ pub fn write(
         flush(&mut rows)?;
     }
     writer.finish()
+}
+
+/// The parts of the state that was read last, so that states read in order are unpacked once a group.
+#[derive(Default)]
+pub struct Cursor {
+    moving: Option<(usize, Vec<Vec<u8>>)>,
+    frozen: Option<((usize, usize), Vec<u8>)>,
 }
 
 /// Where a checkpoint stands in its file.
@@ -178,14 +189,47 @@ impl Checkpoints {
         let Some(seat) = self.seats.get(&(chain, block)) else {
             return Ok(None);
         };
-        let cell = |(group, row): (usize, usize), column| match self.table.cells(group, column)? {
-            Cells::Bytes(mut cells) => Ok(std::mem::take(&mut cells[row])),
-            _ => Err("a state is not bytes".to_owned()),
+        let cell = |(group, row): (usize, usize), column| {
+            Ok::<_, String>(std::mem::take(&mut self.bytes(group, column)?[row]))
         };
         Ok(Some(State {
             frozen: cell(seat.frozen, 3)?,
             moving: cell((seat.group, seat.row), 4)?,
         }))
+    }
+
+    /// [`Checkpoints::state`] of one block after another.
+    pub fn next_state(
+        &self,
+        chain: usize,
+        block: u64,
+        cursor: &mut Cursor,
+    ) -> Result<Option<State>, String> {
+        let Some(seat) = self.seats.get(&(chain, block)) else {
+            return Ok(None);
+        };
+        let moving = match cursor.moving.take() {
+            Some((group, cells)) if group == seat.group => cells,
+            _ => self.bytes(seat.group, 4)?,
+        };
+        let frozen = match cursor.frozen.take() {
+            Some((place, frozen)) if place == seat.frozen => frozen,
+            _ => std::mem::take(&mut self.bytes(seat.frozen.0, 3)?[seat.frozen.1]),
+        };
+        let state = State {
+            frozen: frozen.clone(),
+            moving: moving[seat.row].clone(),
+        };
+        cursor.moving = Some((seat.group, moving));
+        cursor.frozen = Some((seat.frozen, frozen));
+        Ok(Some(state))
+    }
+
+    fn bytes(&self, group: usize, column: usize) -> Result<Vec<Vec<u8>>, String> {
+        match self.table.cells(group, column)? {
+            Cells::Bytes(cells) => Ok(cells),
+            _ => Err("a state is not bytes".into()),
+        }
     }
 }
 
@@ -196,12 +240,16 @@ mod tests {
     #[test]
     fn checkpoints_are_thinned_to_the_bound() {
         use Phase::{BurnIn, Draws};
-        let phases = [[BurnIn; 5], [Draws; 5]].concat();
+        let mut phases = [[(BurnIn, true); 5], [(Draws, true); 5]].concat();
         let all: Vec<u64> = (1..=10).collect();
         assert_eq!(kept(&phases, 10, 2, 200), all);
         assert_eq!(kept(&phases, 10, 2, 199), [2, 4, 5, 7, 9, 10]);
         assert_eq!(kept(&phases, 10, 2, 80), [4, 5, 9, 10]);
         assert_eq!(kept(&phases, 1000, 2, 1), [5, 10]);
         assert!(kept(&[], 1000, 2, 1).is_empty());
+        for at in [0, 1, 7] {
+            phases[at].1 = false;
+        }
+        assert_eq!(kept(&phases, 10, 2, 200), [3, 4, 5, 6, 7, 9, 10]);
     }
 }

@@ -85,7 +85,8 @@ impl Circumstances {
         self.save(open)
     }
 
-    fn save(&self, open: &Open) -> Result<Json, RecordFault> {
+    /// Writes what is entered so far, and gives it.
+    pub fn save(&self, open: &Open) -> Result<Json, RecordFault> {
         let mut starts = self.earlier.clone();
         starts.push(Json::object(self.this.clone()));
         let (runs, fault) = self.begun.earlier();

@@ -158,6 +158,18 @@ impl DrawsFile {
         Columns::new(self.ledgers.clone(), self.clone(), Phase::Draws, span)
     }
 
+    /// A span of the draws of the first chains, and of them the quantities at these places.
+    pub fn chosen(
+        self: &Arc<Self>,
+        chains: usize,
+        places: Vec<usize>,
+        span: Range<u64>,
+    ) -> Columns {
+        let file = self.clone();
+        let reader = Arc::new(Chosen { file, places });
+        Columns::new(self.ledgers[..chains].to_vec(), reader, Phase::Draws, span)
+    }
+
     /// Draws of each chain.
     pub fn draws(&self) -> u64 {
         self.draws
@@ -182,6 +194,22 @@ impl DrawsFile {
             first += rows;
         }
         Ok(())
+    }
+}
+
+/// Some quantities of a file, counted anew.
+struct Chosen {
+    file: Arc<DrawsFile>,
+    places: Vec<usize>,
+}
+
+impl Reader for Chosen {
+    fn column(&self, mark: Mark, quantity: usize, into: &mut Vec<f64>) -> Result<(), String> {
+        self.file.column(mark, self.places[quantity], into)
+    }
+
+    fn state(&self, block: &Stood) -> Result<State, String> {
+        self.file.state(block)
     }
 }
 

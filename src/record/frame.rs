@@ -4,16 +4,17 @@
 //! head:   "odograph" | version u32 | plan digest 32 | SHA-256 of these
 //! frame:  header (200 bytes) | payload | frozen part of the state, if it changed | moving part
 //! header:   0 "blok"      4 point u32     8 chain u32    12 phase u8   13 frozen part follows u8
-//!          14 zero u16   16 number u64   24 draws u32    28 quantities u32
+//!          14 state left out u8   15 zero u8   16 number u64   24 draws u32    28 quantities u32
 //!          32 frozen bytes u32   36 moving bytes u32
 //!          40 SHA-256 of the payload    72 of the frozen part    104 of the moving part
 //!         136 link of the trail        168 SHA-256 of the 168 bytes before
 //! ```
 //!
 //! The header's own check covers the digests of all that follows it, so every byte of a frame is hashed
-//! once. A frozen part that is not repeated is that of the chain's last frame which has one.
+//! once. A frozen part that is not repeated is that of the chain's last frame which has one. The state of a block
+//! that was taken over from a record may be left out: its hash stands, its bytes do not.
 
-use crate::course::Phase;
+use crate::course::{Phase, State};
 use crate::engine::trail::{self, Digest, StateHash};
 use crate::engine::{Finished, Mark, Stood};
 
@@ -45,6 +46,8 @@ pub struct Header {
     pub chain: u32,
     pub phase: Phase,
     pub frozen_here: bool,
+    /// Whether the state after the block follows.
+    pub kept: bool,
     pub number: u64,
     pub draws: u32,
     pub quantities: u32,
@@ -56,23 +59,27 @@ pub struct Header {
 }
 
 impl Header {
-    /// The header of a finished block. Fails when a count does not fit its field.
-    pub fn of(block: &Finished) -> Result<Header, std::num::TryFromIntError> {
-        let frozen_here = block.frozen_changed || block.number == 1;
+    /// The header of a finished block; `frozen_here` where the frozen part of its state is to follow. Fails when a
+    /// count does not fit its field.
+    pub fn of(block: &Finished, frozen_here: bool) -> Result<Header, std::num::TryFromIntError> {
+        let state = block.state.as_ref();
+        let size = |part: fn(&State) -> &Vec<u8>| state.map_or(0, |state| part(state).len());
+        let frozen_here = frozen_here && state.is_some();
         Ok(Header {
             point: block.point.try_into()?,
             chain: block.chain.try_into()?,
             phase: block.phase,
             frozen_here,
+            kept: state.is_some(),
             number: block.number,
             draws: block.draws.try_into()?,
             quantities: (block.payload.len() / 8 / block.draws.max(1)).try_into()?,
             frozen: if frozen_here {
-                block.state.frozen.len().try_into()?
+                size(|state| &state.frozen).try_into()?
             } else {
                 0
             },
-            moving: block.state.moving.len().try_into()?,
+            moving: size(|state| &state.moving).try_into()?,
             draws_digest: block.draws_digest,
             state_hash: block.state_hash,
             link: block.link,
@@ -87,7 +94,11 @@ impl Header {
         put(8, &self.chain.to_le_bytes());
         put(
             12,
-            &[trail::phase_number(self.phase), self.frozen_here.into()],
+            &[
+                trail::phase_number(self.phase),
+                self.frozen_here.into(),
+                (!self.kept).into(),
+            ],
         );
         put(16, &self.number.to_le_bytes());
         put(24, &self.draws.to_le_bytes());
@@ -115,13 +126,18 @@ impl Header {
             1 => Phase::Draws,
             _ => return None,
         };
-        Some(Header {
+        let header = Header {
             point: word(4),
             chain: word(8),
             phase,
             frozen_here: match bytes[13] {
                 0 => false,
                 1 => true,
+                _ => return None,
+            },
+            kept: match bytes[14] {
+                0 => true,
+                1 => false,
                 _ => return None,
             },
             number: u64::from_le_bytes(bytes[16..24].try_into().expect("8 bytes")),
@@ -135,7 +151,9 @@ impl Header {
                 moving: digest(104),
             },
             link: digest(136),
-        })
+        };
+        let without = !header.frozen_here && (header.frozen, header.moving) == (0, 0);
+        (header.kept || without).then_some(header)
     }
 
     /// Bytes of the payload; `None` past what a file can hold.
@@ -160,6 +178,7 @@ impl Header {
             state_hash: self.state_hash,
             link: self.link,
             mark,
+            kept: self.kept,
             frozen,
         }
     }

@@ -3,7 +3,7 @@
 
 use super::fault::RecordFault;
 use super::frame::{self, HEAD, HEADER, Header};
-use super::scan::{Broken, Cut, Scan, Shelf, cut, scan};
+use super::scan::{Broken, Cut, Frozen, Scan, Shelf, cut, scan};
 use super::sync::Syncer;
 use crate::course::State;
 use crate::engine::trail::{self, Digest};
@@ -20,6 +20,7 @@ pub struct JournalFile {
     file: Arc<File>,
     syncer: Syncer,
     shelf: Shelf,
+    frozen: Frozen,
     end: u64,
     /// What was cut off when it was opened.
     pub cut: Option<Cut>,
@@ -44,8 +45,8 @@ impl JournalFile {
             file.set_len(0).map_err(io)?;
             file.write_all_at(&head, 0).map_err(io)?;
             Scan {
-                shelf: Shelf::new(),
                 end: HEAD as u64,
+                ..Scan::default()
             }
         } else {
             let mut found = [0; HEAD];
@@ -75,6 +76,7 @@ impl JournalFile {
                 .map(|blocks| blocks.len() as u64)
                 .sum(),
             shelf: scanned.shelf,
+            frozen: scanned.frozen,
             end: scanned.end,
             cut,
         })
@@ -108,6 +110,35 @@ impl JournalFile {
         RecordFault::disk("read", &self.path, &changed)
     }
 
+    /// Appends a block that an earlier run drew, as one that stands.
+    pub fn take(&mut self, block: &Finished) -> Result<(), String> {
+        let mark = self.append(block)?;
+        let frozen = self.frozen.get(&(block.point, block.chain));
+        let stood = Stood {
+            phase: block.phase,
+            draws: block.draws,
+            draws_digest: block.draws_digest,
+            state_hash: block.state_hash,
+            link: block.link,
+            mark,
+            kept: block.state.is_some(),
+            frozen: frozen.map_or(mark, |(_, mark)| *mark),
+        };
+        let key = (block.point, block.chain);
+        self.shelf.entry(key).or_default().push(stood);
+        Ok(())
+    }
+
+    /// Throws all blocks away.
+    pub fn clear(&mut self) -> Result<(), String> {
+        let cleared = self.file.set_len(HEAD as u64);
+        cleared.map_err(|fault| self.words("write", &fault))?;
+        self.end = HEAD as u64;
+        self.shelf.clear();
+        self.frozen.clear();
+        Ok(())
+    }
+
     /// Asks that what is written be on the disk soon.
     pub fn sync_soon(&mut self) {
         self.syncer.ask();
@@ -115,13 +146,14 @@ impl JournalFile {
 
     fn write(&mut self, header: &Header, block: &Finished) -> io::Result<u64> {
         let mut at = self.end;
-        let frozen: &[u8] = if header.frozen_here {
-            &block.state.frozen
-        } else {
-            &[]
+        let state = block.state.as_ref();
+        let moving: &[u8] = state.map_or(&[], |state| &state.moving);
+        let frozen: &[u8] = match state {
+            Some(state) if header.frozen_here => &state.frozen,
+            _ => &[],
         };
         let head = header.bytes();
-        for part in [head.as_slice(), &block.payload, frozen, &block.state.moving] {
+        for part in [head.as_slice(), &block.payload, frozen, moving] {
             if !part.is_empty() {
                 self.file.write_all_at(part, at)?;
                 at += part.len() as u64;
@@ -144,11 +176,19 @@ impl Journal for JournalFile {
         if let Some(fault) = self.syncer.fault() {
             return Err(self.words("write", &fault));
         }
-        let header = Header::of(block)
+        let key = (block.point, block.chain);
+        let written = self.frozen.get(&key).map(|(digest, _)| *digest);
+        let frozen_here = written != Some(block.state_hash.frozen);
+        let header = Header::of(block, frozen_here)
             .map_err(|_| "a block is too long for the journal: its counts pass 2^32".to_owned())?;
         let mark = Mark(self.end);
         match self.write(&header, block) {
-            Ok(end) => self.end = end,
+            Ok(end) => {
+                self.end = end;
+                if header.frozen_here {
+                    self.frozen.insert(key, (header.state_hash.frozen, mark));
+                }
+            }
             Err(fault) => {
                 // A part of the frame may stand; opening would cut it off as well, should this fail too.
                 let _ = self.file.set_len(self.end);
@@ -219,6 +259,9 @@ impl Reader for JournalReader {
 
     fn state(&self, block: &Stood) -> Result<State, String> {
         let last = self.header(block.mark)?;
+        if !last.kept {
+            return Err("the state after this block is not kept".into());
+        }
         let at = block.mark.0 + last.frame().unwrap_or(0) - u64::from(last.moving);
         let moving = self.bytes(at, last.moving)?;
         let keeper = self.header(block.frozen)?;

@@ -2,6 +2,7 @@
 
 use super::frame::{HEAD, HEADER, Header, MAGIC};
 use crate::course::Phase;
+use crate::engine::trail::Digest;
 use crate::engine::{Mark, Stood};
 use sha2::{Digest as _, Sha256};
 use std::collections::BTreeMap;
@@ -11,10 +12,14 @@ use std::os::unix::fs::FileExt;
 
 /// Blocks by point and chain.
 pub type Shelf = BTreeMap<(usize, usize), Vec<Stood>>;
+/// By point and chain, the digest of the frozen part that was written last, and where it is.
+pub type Frozen = BTreeMap<(usize, usize), (Digest, Mark)>;
 
 /// What stands in a journal.
+#[derive(Default)]
 pub struct Scan {
     pub shelf: Shelf,
+    pub frozen: Frozen,
     /// Where the last whole frame ends.
     pub end: u64,
 }
@@ -45,14 +50,14 @@ impl From<io::Error> for Broken {
 /// Reads all whole frames after the head. Bytes from the first frame that is not whole are the torn tail:
 /// blocks behind it, if any, are computed again. Nothing is allocated by a count that the file holds.
 pub fn scan(file: &File, length: u64) -> Result<Scan, Broken> {
-    let mut shelf = Shelf::new();
+    let (mut shelf, mut frozen) = (Shelf::new(), Frozen::new());
     let mut end = HEAD as u64;
     let mut buffer = vec![0; 1 << 18];
     while let Some(header) = frame_at(file, end, length, &mut buffer)? {
-        shelve(&mut shelf, &header, end)?;
+        shelve(&mut shelf, &mut frozen, &header, end)?;
         end += header.frame().expect("held against the length of the file");
     }
-    Ok(Scan { shelf, end })
+    Ok(Scan { shelf, frozen, end })
 }
 
 /// The header of the whole frame at an offset, all its bytes held against their digests.
@@ -76,7 +81,9 @@ fn frame_at(file: &File, at: u64, length: u64, buffer: &mut [u8]) -> io::Result<
     if header.frozen_here {
         parts.push((u64::from(header.frozen), header.state_hash.frozen));
     }
-    parts.push((u64::from(header.moving), header.state_hash.moving));
+    if header.kept {
+        parts.push((u64::from(header.moving), header.state_hash.moving));
+    }
     for (size, digest) in parts {
         if hash_of(file, from, size, buffer)? != digest {
             return Ok(None);
@@ -138,7 +145,8 @@ fn hash_of(file: &File, mut from: u64, size: u64, buffer: &mut [u8]) -> io::Resu
     Ok(hash.finalize().into())
 }
 
-fn shelve(shelf: &mut Shelf, header: &Header, at: u64) -> Result<(), Broken> {
+/// Puts the block of a frame on its shelf.
+fn shelve(shelf: &mut Shelf, frozen: &mut Frozen, header: &Header, at: u64) -> Result<(), Broken> {
     let key = (header.point as usize, header.chain as usize);
     let blocks = shelf.entry(key).or_default();
     let before = blocks.last();
@@ -156,11 +164,14 @@ fn shelve(shelf: &mut Shelf, header: &Header, at: u64) -> Result<(), Broken> {
     if header.phase == Phase::BurnIn && before.is_some_and(|b| b.phase == Phase::Draws) {
         return Err(broken("is burn-in after draws"));
     }
-    let frozen = match before {
-        _ if header.frozen_here => Mark(at),
-        Some(before) if before.state_hash.frozen == header.state_hash.frozen => before.frozen,
+    if header.frozen_here {
+        frozen.insert(key, (header.state_hash.frozen, Mark(at)));
+    }
+    let written = match frozen.get(&key) {
+        _ if !header.kept => Mark(at),
+        Some((digest, mark)) if *digest == header.state_hash.frozen => *mark,
         _ => return Err(broken("lacks the frozen part of its state")),
     };
-    blocks.push(header.stood(Mark(at), frozen));
+    blocks.push(header.stood(Mark(at), written));
     Ok(())
 }

@@ -182,9 +182,11 @@ fn write_point(
                 .map_err(|fault| RecordFault::disk("write", &path, &fault))?;
         }
     }
-    let phases: Vec<Phase> = chains.first().map_or(Vec::new(), |blocks| {
-        blocks.iter().map(|block| block.phase).collect()
-    });
+    let count = chains.first().map_or(0, Vec::len);
+    let at_hand = |at: usize| chains.iter().all(|blocks| blocks[at].kept);
+    let phases: Vec<(Phase, bool)> = (0..count)
+        .map(|at| (chains[0][at].phase, at_hand(at)))
+        .collect();
     let path = folder.join(checkpoints::name(point));
     let disk = |fault| RecordFault::disk("write", &path, &fault);
     let size = match chains.first().and_then(|blocks| blocks.last()) {

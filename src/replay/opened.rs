@@ -64,6 +64,13 @@ impl Stated {
         self.numerics.draws == NUMERICS.draws
     }
 
+    /// The keys of its points.
+    pub fn point_keys(&self) -> impl Iterator<Item = &str> {
+        let points = self.json.get("points").map_or(&[][..], Json::items);
+        let keys = points.iter().filter_map(|point| point.get("key"));
+        keys.filter_map(Json::as_text)
+    }
+
     /// Whether this program estimates as the record's did.
     pub fn estimates_alike(&self) -> bool {
         self.numerics.estimates == NUMERICS.estimates

@@ -56,8 +56,7 @@ fn cost(file: &Path, block_draws: usize, draws: usize) -> Option<f64> {
             draws: block_draws,
             payload,
             draws_digest,
-            state: state.clone(),
-            frozen_changed: number == 1,
+            state: Some(state.clone()),
             state_hash: hash,
             link,
         };

@@ -214,3 +214,79 @@ fn a_frozen_part_is_kept_once() {
         );
     }
 }
+
+/// The blocks of a whole journal taken over into another, the states after some of them left out.
+fn taken(from: &Path, to: &Path, kept: impl Fn(u64) -> bool) {
+    let mut whole = JournalFile::open(from, &[7; 32]).unwrap();
+    let mut journal = JournalFile::open(to, &[7; 32]).unwrap();
+    let reader = whole.reader();
+    for (point, chain) in whole.shelf.clone().into_keys() {
+        for (number, stood) in (1..).zip(whole.standing(point, chain)) {
+            let mut columns = Vec::new();
+            for quantity in 0..3 {
+                reader.column(stood.mark, quantity, &mut columns).unwrap();
+            }
+            let block = crate::course::Block {
+                draws: stood.draws,
+                values: columns,
+            };
+            let taken = journal.take(&Finished {
+                point,
+                chain,
+                number,
+                phase: stood.phase,
+                draws: stood.draws,
+                payload: trail::payload(&block),
+                draws_digest: stood.draws_digest,
+                state: kept(number).then(|| reader.state(&stood).unwrap()),
+                state_hash: stood.state_hash,
+                link: stood.link,
+            });
+            taken.unwrap();
+        }
+    }
+    journal.sync().unwrap();
+}
+
+/// Blocks taken over without their states: the run goes on from the last state that is kept, draws what stands
+/// behind it again, and comes to the same bits; so it does from any part of such a journal.
+#[test]
+fn blocks_without_their_states_are_gone_on_with() {
+    let (_folder, path, ends) = whole();
+    let folder = tempfile::tempdir().unwrap();
+    let other = folder.path().join("journal");
+    for every in [1, 2, 5, 100] {
+        taken(&path, &other, |number| number % every == 0);
+        let mut journal = JournalFile::open(&other, &[7; 32]).unwrap();
+        assert!(journal.cut.is_none());
+        let stood = journal.standing(0, 2);
+        for (number, block) in (1..).zip(&stood) {
+            assert_eq!(block.kept, number % every == 0);
+            let state = journal.reader().state(block);
+            let hash = state.map(|state| trail::StateHash::of(&state));
+            assert_eq!(hash.ok(), block.kept.then_some(block.state_hash));
+        }
+        drop(journal);
+        let bytes = std::fs::read(&other).unwrap();
+        for cut in (0..=bytes.len()).step_by(bytes.len() / 13) {
+            std::fs::write(&other, &bytes[..cut]).unwrap();
+            for (threads, lanes) in [(1, 4), (2, 3)] {
+                let again = run(&other, threads, lanes);
+                assert_eq!(again.as_ref(), Ok(&ends), "every {every}, cut at {cut}");
+            }
+        }
+        std::fs::remove_file(&other).unwrap();
+    }
+}
+
+/// What is thrown away leaves a journal as it was begun.
+#[test]
+fn a_cleared_journal_is_begun_anew() {
+    let (_folder, path, ends) = whole();
+    let mut journal = JournalFile::open(&path, &[7; 32]).unwrap();
+    journal.clear().unwrap();
+    assert!(journal.standing(0, 0).is_empty());
+    drop(journal);
+    assert_eq!(std::fs::metadata(&path).unwrap().len(), HEAD as u64);
+    assert_eq!(run(&path, 2, 2), Ok(ends));
+}
