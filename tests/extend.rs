@@ -65,7 +65,8 @@ fn run(folder: &Path, study: &str, threads: usize) -> Output {
 
 fn records(folder: &Path) -> Vec<PathBuf> {
     let entries = fs::read_dir(folder.join("results/leaning")).expect("results");
-    entries.map(|entry| entry.unwrap().path()).collect()
+    let paths = entries.map(|entry| entry.unwrap().path());
+    paths.filter(|path| path.is_dir()).collect()
 }
 
 fn json(record: &Path, name: &str) -> serde_json::Value {
