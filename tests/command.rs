@@ -395,3 +395,29 @@ fn chains_that_disagree_end_in_3() {
     let said = said.split_whitespace().collect::<Vec<_>>().join(" ");
     assert!(said.contains("start forgotten failed"), "{said}");
 }
+
+#[test]
+fn records_are_listed_at_a_glance() {
+    let (folder, first) = with(STUDY, &["run", "one.toml"]);
+    assert_eq!(status(&first), 0, "{}", text(&first.stderr));
+    fs::create_dir_all(folder.path().join("results/notes")).unwrap();
+    fs::write(folder.path().join("results/notes/a.txt"), "mine").unwrap();
+    let list = |more: &[&str]| {
+        let output = odograph(folder.path(), &[&["list"], more].concat());
+        assert_eq!(status(&output), 0, "{}", text(&output.stderr));
+        text(&output.stdout)
+    };
+    for _ in 0..2 {
+        let told = list(&[]);
+        assert!(
+            told.contains("  sealed") && told.contains("1 of 1 records"),
+            "{told}"
+        );
+    }
+    assert!(list(&["--only", "open"]).contains("0 of 1 records"));
+    assert!(list(&["--with", "no such words"]).contains("0 of 1 records"));
+    let json: serde_json::Value = serde_json::from_str(&list(&["--json"])).unwrap();
+    assert_eq!(json["records"][0]["state"], "sealed");
+    let nowhere = odograph(folder.path(), &["list", "nowhere"]);
+    assert_eq!(status(&nowhere), 1);
+}
