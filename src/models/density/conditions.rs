@@ -48,6 +48,11 @@ fn finite_mass(declared: &Declared, posterior: &Posterior) -> Condition {
         // almost all data (continuous observations may make it infinite on a set of probability 0).
         (Standing::ByConstruction, "every unknown has a law of mass 1 and the data enter by laws alone (finite for almost all data)".to_string())
     };
+    let mut evidence = evidence;
+    for sentence in super::narrowed::narrowed(declared, posterior) {
+        evidence.push_str("; ");
+        evidence.push_str(&sentence);
+    }
     Condition {
         name: "finite mass",
         standing,

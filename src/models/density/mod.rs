@@ -12,6 +12,7 @@ mod declared;
 mod improper;
 mod missing;
 mod names;
+mod narrowed;
 mod observed;
 mod order;
 mod posterior;

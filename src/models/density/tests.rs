@@ -534,3 +534,32 @@ fn a_chain_that_runs_away_records_no_number() {
         );
     }
 }
+
+#[test]
+fn a_law_cut_by_what_it_is_used_for_is_told() {
+    let study = r#"
+        [model]
+        family = "density"
+        [model.unknown]
+        p = { law = "normal(mean = 0.3, sd = 0.2)" }
+        q = { law = "beta(alpha = 1, beta = 1)" }
+        s = { law = "student(degrees = 4, location = 0, scale = 1)" }
+        t = { law = "gamma(shape = q, rate = s)" }
+        [model.observed]
+        failures = { of = "stations.failures", law = "binomial(trials = 90, probability = p)" }
+    "#;
+    let model = resolve(study, &stations(false), &StartSpec::Spread, &[]).expect("a model");
+    let (standing, evidence) = said(&model, "finite mass").expect("is said");
+    assert_eq!(standing, Standing::ByConstruction);
+    for (unknown, named) in [("p", true), ("s", true), ("q", false), ("t", false)] {
+        let told = evidence.contains(&format!("the law of `{unknown}` reaches beyond"));
+        assert_eq!(told, named, "{unknown}: {evidence}");
+    }
+    let bounded = study.replace(
+        "normal(mean = 0.3, sd = 0.2)",
+        "truncated(normal(mean = 0.3, sd = 0.2), from = 0, to = 1)",
+    );
+    let model = resolve(&bounded, &stations(false), &StartSpec::Spread, &[]).expect("a model");
+    let (_, evidence) = said(&model, "finite mass").expect("is said");
+    assert!(!evidence.contains("law of `p`"), "{evidence}");
+}
