@@ -27,7 +27,7 @@ b = { law = "normal(mean = pull * a, sd = 0.3)" }
 method = "metropolis"
 [ensemble]
 chains = 5
-every = 10
+every = 40
 burn_in = 400
 draws = 12000
 "#;
@@ -254,4 +254,35 @@ fn points_of_a_sweep_without_draws_are_left_out() {
     let plan = json(&record, "data/plan.json");
     assert!(plan["closed"][0].is_object() && plan["closed"][5].is_null());
     verified(here.path(), &record);
+}
+
+/// A run that began with the blocks of a shorter one's record, interrupted and closed: all three records verify.
+#[test]
+fn a_run_that_took_blocks_over_is_closed_as_well() {
+    let whole = folder(STUDY);
+    let run = odograph(whole.path(), &["run", "leaning.toml"]);
+    assert_eq!(status(&run), 0, "{}", text(&run.stderr));
+
+    let here = folder(&STUDY.replace("draws = 12000", "draws = 2000"));
+    let short = odograph(here.path(), &["run", "leaning.toml"]);
+    assert_eq!(status(&short), 0, "{}", text(&short.stderr));
+    fs::write(here.path().join("leaning.toml"), STUDY).unwrap();
+    let open = interrupted(here.path(), 300_000);
+    let closed = odograph(here.path(), &["seal", "leaning.toml"]);
+    assert_eq!(status(&closed), 0, "{}", text(&closed.stderr));
+    let on = odograph(here.path(), &["run", "leaning.toml"]);
+    assert_eq!(status(&on), 0, "{}", text(&on.stderr));
+    let all = sealed(here.path());
+    assert_eq!(all.len(), 3);
+    for record in &all {
+        verified(here.path(), record);
+    }
+    let ended = open.with_extension("");
+    let starts = json(&ended, "circumstances.json")["starts"].clone();
+    assert!(starts[0]["taken_over"][0]["draws"].as_u64() > Some(0));
+    let wanted = &sealed(whole.path())[0];
+    for name in ["data/summary.json", "data/trail.parquet"] {
+        let [ours, theirs] = [&ended, wanted].map(|record| fs::read(record.join(name)).unwrap());
+        assert!(ours == theirs, "{name} is another");
+    }
 }
