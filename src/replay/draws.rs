@@ -167,6 +167,37 @@ fn point(
     }))
 }
 
+/// What can be held of a trail without its plan: that the links of every chain follow from its first.
+pub fn own_links(folder: &Path) -> Vec<String> {
+    let wrong = |words: &str| format!("{}: {words}", trail_file::NAME);
+    let rows = match trail_file::read(&folder.join(trail_file::NAME), MOST_BLOCKS) {
+        Ok(rows) => rows,
+        Err(words) => return vec![wrong(&words)],
+    };
+    let mut found = Vec::new();
+    for pair in rows.windows(2) {
+        let [before, row] = pair else { continue };
+        let follows = (before.point, before.chain) == (row.point, row.chain);
+        if follows && (row.block != before.block + 1 || row.link != link_after(before, row)) {
+            let words = "does not follow from the one before it";
+            found.push(wrong(&place(row.point, row.chain, row.block, words)));
+        }
+    }
+    found
+}
+
+/// The link that a block must have after the one before it.
+fn link_after(before: &TrailRow, row: &TrailRow) -> Digest {
+    trail::next_link(
+        &before.link,
+        row.block,
+        row.phase,
+        row.draws,
+        &row.draws_digest,
+        &row.state_hash,
+    )
+}
+
 /// The first thing wrong with the trail of a chain.
 fn check_chain(
     point: usize,
@@ -194,15 +225,7 @@ fn check_chain(
         if row.phase == Phase::Draws && row.state_hash.frozen != before.state_hash.frozen {
             return at(row.block, "adapted after the burn-in");
         }
-        let next = trail::next_link(
-            &before.link,
-            row.block,
-            row.phase,
-            row.draws,
-            &row.draws_digest,
-            &row.state_hash,
-        );
-        if row.link != next {
+        if row.link != link_after(before, row) {
             return at(
                 row.block,
                 "does not follow from the one before it: its link is another",

@@ -56,7 +56,18 @@ fn parts(folder: &Path, request: &Request<'_>) -> Account {
     account.title.clone_from(&stated.title);
     if !stated.draws_alike() {
         account.enter(Part::Bag, of_bag, "every file is as it was sealed".into());
-        return rest(account, Part::Plan, &bag::other_numerics(folder, &stated));
+        let why = bag::other_numerics(folder, &stated);
+        account.leave(Part::Plan, why.clone());
+        let links = draws::own_links(folder);
+        if links.is_empty() {
+            account.leave(
+                Part::Draws,
+                format!("every link of the trail follows from the first; {why}"),
+            );
+        } else {
+            account.enter(Part::Draws, links, String::new());
+        }
+        return rest(account, Part::Figures, &why);
     }
     tell("plan");
     let opened = match opened::open(folder, &stated, request.registry) {
