@@ -5,6 +5,12 @@ use std::collections::BTreeMap;
 
 /// How deep arrays and objects may stand in one another.
 const DEEPEST: usize = 64;
+/// Bytes that the values read may take in memory, about: text of few bytes may hold many empty objects.
+const ROOM: usize = 1 << 30;
+/// Bytes of an item of an array, of an object, and of each of its members, about; room for growth included.
+const ITEM: usize = 64;
+const OBJECT: usize = 640;
+const MEMBER: usize = 128;
 /// The largest count.
 const LARGEST: u64 = (1 << 53) - 1;
 
@@ -12,7 +18,11 @@ impl Json {
     /// Reads JSON text. A number without sign, point and exponent is a count while it is small enough,
     /// else a real. Fails with what is wrong and the byte where.
     pub fn read(text: &str) -> Result<Json, String> {
-        let mut reader = Reader { text, at: 0 };
+        let mut reader = Reader {
+            text,
+            at: 0,
+            room: ROOM,
+        };
         let value = reader.value(0)?;
         reader.space();
         if reader.at < text.len() {
@@ -49,11 +59,18 @@ impl Json {
 struct Reader<'a> {
     text: &'a str,
     at: usize,
+    room: usize,
 }
 
 impl Reader<'_> {
     fn wrong(&self, what: &str) -> String {
         format!("not JSON: {what} at byte {}", self.at)
+    }
+
+    fn takes_room(&mut self, bytes: usize) -> Result<(), String> {
+        let left = self.room.checked_sub(bytes);
+        self.room = left.ok_or_else(|| self.wrong("more values than fit in memory"))?;
+        Ok(())
     }
 
     fn peek(&self) -> Option<u8> {
@@ -100,6 +117,7 @@ impl Reader<'_> {
             return Ok(Json::Array(items));
         }
         loop {
+            self.takes_room(ITEM)?;
             items.push(self.value(depth + 1)?);
             self.space();
             if self.takes("]") {
@@ -118,7 +136,9 @@ impl Reader<'_> {
         if self.takes("}") {
             return Ok(Json::Object(members));
         }
+        self.takes_room(OBJECT)?;
         loop {
+            self.takes_room(MEMBER)?;
             self.space();
             if self.peek() != Some(b'"') {
                 return Err(self.wrong("no key"));

@@ -132,7 +132,8 @@ fn account_text(record: &Path, account: &Account) -> String {
         let _ = writeln!(
             text,
             "\nOf {} blocks {} were chosen by lot. So chosen, one altered block would have been found with \
-             probability {:.3}, ten anywhere with {:.3}, one in a hundred ({one}) with {:.3}.",
+             probability {:.3}, ten with {:.3} or more, one in a hundred ({one}) with {:.3} or more, the less the \
+             closer together they stand.",
             chance.all,
             chance.chosen,
             chance.of(1),

@@ -2,6 +2,9 @@
 
 use crate::course::State;
 
+/// A chain that makes a step a nanosecond comes so far in a hundred days.
+const MOST: u64 = 1 << 53;
+
 /// Bytes of one part of a state, taken from the front.
 pub struct Part<'a>(&'a [u8]);
 
@@ -17,8 +20,13 @@ impl Part<'_> {
     pub fn real(&mut self) -> Result<f64, String> {
         self.array().map(f64::from_le_bytes)
     }
+    /// A count of steps or draws. None comes near the bound, which keeps sums of counts from running over.
     pub fn count(&mut self) -> Result<u64, String> {
-        self.array().map(u64::from_le_bytes)
+        let count = u64::from_le_bytes(self.array()?);
+        if count > MOST {
+            return Err("the saved state has an impossible count".into());
+        }
+        Ok(count)
     }
 }
 

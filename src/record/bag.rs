@@ -7,6 +7,7 @@
 use super::fault::RecordFault;
 use super::moment;
 use crate::canon;
+use crate::reading;
 use sha2::{Digest as _, Sha256};
 use std::collections::{BTreeMap, BTreeSet};
 use std::fs::{self, File};
@@ -28,6 +29,8 @@ const TAGGED: [&str; 4] = [INFO, DECLARATION, CIRCUMSTANCES, MANIFEST];
 const CHUNK: usize = 1 << 16;
 /// A list longer than this is refused.
 const LONGEST_LIST: u64 = 1 << 28;
+/// A label longer than this is no label.
+const LONGEST_INFO: u64 = 1 << 20;
 /// Files and folders looked at, and how deep they may lie.
 const MOST_FILES: usize = 1 << 20;
 const DEEPEST: usize = 8;
@@ -46,7 +49,7 @@ pub fn write(folder: &Path, title: &str, result_digest: &str) -> Result<(), Reco
             count += 1;
         }
     }
-    let title = title.split_whitespace().collect::<Vec<_>>().join(" ");
+    let title = one_line(title);
     let info = format!(
         "Bag-Software-Agent: odograph {}\nBagging-Date: {}\nExternal-Description: {title}\n\
          External-Identifier: {result_digest}\nPayload-Oxum: {bytes}.{count}\n",
@@ -92,7 +95,7 @@ pub fn payload(folder: &Path) -> Result<Vec<(String, u64)>, RecordFault> {
 /// When the folder itself cannot be read.
 pub fn check(folder: &Path) -> Result<Vec<String>, RecordFault> {
     let walked = walk(folder)?;
-    let mut differences = walked.strange;
+    let mut differences = [walked.pitfalls.clone(), walked.strange.clone()].concat();
     let mut lists: BTreeMap<&str, BTreeMap<String, String>> = BTreeMap::new();
     for (list, payload) in [(MANIFEST, true), (TAGS, false)] {
         match read_list(&folder.join(list)) {
@@ -121,8 +124,12 @@ pub fn check(folder: &Path) -> Result<Vec<String>, RecordFault> {
             None => differences.push(format!("{name} is in no list of the record")),
             Some(digest) => {
                 if sha256(path).ok().is_none_or(|(found, _)| found != digest) {
+                    let by = match name.starts_with("data/") {
+                        true => MANIFEST,
+                        false => TAGS,
+                    };
                     differences.push(format!(
-                        "{name} is not as it was when the record was sealed"
+                        "{name} is not as it was when the record was sealed ({by})"
                     ));
                 }
             }
@@ -130,6 +137,10 @@ pub fn check(folder: &Path) -> Result<Vec<String>, RecordFault> {
     }
     for name in listed.into_keys() {
         differences.push(format!("{name} is listed, and is not there"));
+    }
+    let oxum = walked.oxum();
+    if label(folder, "Payload-Oxum").is_some_and(|said| said != oxum) {
+        differences.push(format!("{INFO}: Payload-Oxum is not {oxum}"));
     }
     if fs::read_to_string(folder.join(DECLARATION))
         .is_ok_and(|text| !text.starts_with("BagIt-Version: 1.0\n"))
@@ -139,6 +150,43 @@ pub fn check(folder: &Path) -> Result<Vec<String>, RecordFault> {
         ));
     }
     Ok(differences)
+}
+
+/// What has no place in a record and is not to be read: links, devices, and more or deeper than is looked at.
+/// Whoever reads on after this is led nowhere else.
+///
+/// # Errors
+/// When the folder itself cannot be read.
+pub fn pitfalls(folder: &Path) -> Result<Vec<String>, RecordFault> {
+    walk(folder).map(|walked| walked.pitfalls)
+}
+
+/// Where the label of a bag, `bag-info.txt`, says another title or result than these.
+pub fn label_differences(folder: &Path, title: &str, result_digest: &str) -> Vec<String> {
+    let title = one_line(title);
+    let wanted = [
+        ("External-Description", &*title),
+        ("External-Identifier", result_digest),
+    ];
+    let wanted = wanted.into_iter().filter_map(|(name, wanted)| {
+        let said = label(folder, name).unwrap_or_default();
+        (said != wanted).then(|| format!("{INFO}: {name} says {said:?}, and should say {wanted:?}"))
+    });
+    wanted.collect()
+}
+
+/// What the label of a bag says under a name.
+fn label(folder: &Path, name: &str) -> Option<String> {
+    let text = reading::read(&folder.join(INFO), LONGEST_INFO).ok()?.bytes;
+    let text = String::from_utf8(text).ok()?;
+    let said = text
+        .lines()
+        .find_map(|line| line.strip_prefix(name)?.strip_prefix(": "));
+    said.map(str::to_owned)
+}
+
+fn one_line(title: &str) -> String {
+    title.split_whitespace().collect::<Vec<_>>().join(" ")
 }
 
 /// Name and digest of every line of a list; in words what is wrong with it.
@@ -156,6 +204,9 @@ fn read_list(path: &Path) -> Result<BTreeMap<String, String>, String> {
         let Some((digest, name)) = entry else {
             return Err(format!("cannot be read in line {}", number + 1));
         };
+        if name.contains(char::is_control) {
+            return Err(format!("cannot be read in line {}", number + 1));
+        }
         if entries.insert(name.to_owned(), digest.to_owned()).is_some() {
             return Err(format!("names {name} twice"));
         }
@@ -167,8 +218,27 @@ fn read_list(path: &Path) -> Result<BTreeMap<String, String>, String> {
 struct Walked {
     /// Plain files by their path from the top with `/` between, sorted; without signatures.
     files: Vec<(String, PathBuf)>,
-    /// What has no place in a record: links, devices, unknown names, too much or too deep.
+    /// What no record has: unknown names.
     strange: Vec<String>,
+    /// What is not to be read at all: links, devices, too much or too deep.
+    pitfalls: Vec<String>,
+}
+
+impl Walked {
+    /// Bytes and files of the payload, as the label of a bag counts them.
+    fn oxum(&self) -> String {
+        let payload = self
+            .files
+            .iter()
+            .filter(|(name, _)| name.starts_with("data/"));
+        let sizes: Vec<u64> = payload
+            .map(|(_, path)| fs::symlink_metadata(path).map_or(0, |about| about.len()))
+            .collect();
+        let bytes = sizes
+            .iter()
+            .fold(0_u64, |sum, size| sum.saturating_add(*size));
+        format!("{bytes}.{}", sizes.len())
+    }
 }
 
 fn walk(folder: &Path) -> Result<Walked, RecordFault> {
@@ -176,6 +246,7 @@ fn walk(folder: &Path) -> Result<Walked, RecordFault> {
     let mut walked = Walked {
         files: Vec::new(),
         strange: Vec::new(),
+        pitfalls: Vec::new(),
     };
     let mut folders = vec![(String::new(), folder.to_owned(), 0)];
     let mut seen = 0;
@@ -185,10 +256,17 @@ fn walk(folder: &Path) -> Result<Walked, RecordFault> {
             let entry = entry.map_err(disk)?;
             let own = entry.file_name();
             let inner = format!("{name}{}", own.to_string_lossy());
+            if own.to_string_lossy().contains(char::is_control) {
+                let shown = inner.replace(char::is_control, "?");
+                walked
+                    .pitfalls
+                    .push(format!("{shown} has no name for a file"));
+                continue;
+            }
             let kind = entry.file_type().map_err(disk)?;
             seen += 1;
             if seen > MOST_FILES || depth > DEEPEST {
-                walked.strange.push(format!(
+                walked.pitfalls.push(format!(
                     "{inner}: the record holds too many files, or too deep"
                 ));
                 return Ok(walked);
@@ -206,7 +284,7 @@ fn walk(folder: &Path) -> Result<Walked, RecordFault> {
                 walked.files.push((inner, entry.path()));
             } else {
                 walked
-                    .strange
+                    .pitfalls
                     .push(format!("{inner} is neither a file nor a folder"));
             }
         }

@@ -10,6 +10,8 @@ use std::path::Path;
 
 /// Bytes of a group of rows, about.
 const GROUP: usize = 1 << 22;
+/// Room beside that and the last state in it: the lengths of the cells, and a state larger than was estimated.
+const ROOM: usize = 1 << 20;
 
 /// Where the checkpoints of a point (from 0) lie in a record.
 pub fn name(point: usize) -> String {
@@ -135,9 +137,10 @@ pub struct Checkpoints {
 }
 
 impl Checkpoints {
-    /// Opens the file, which may hold at most so many states.
-    pub fn open(path: &Path, most: u64) -> Result<Checkpoints, String> {
-        let table = Table::open(path, &columns())?;
+    /// Opens the file, which may hold at most so many states, of about `size` bytes each.
+    pub fn open(path: &Path, most: u64, size: usize) -> Result<Checkpoints, String> {
+        let largest = (GROUP + ROOM) as u64 + 4 * size as u64;
+        let table = Table::open(path, &columns())?.within(largest);
         let rows: u64 = (0..table.groups())
             .map(|group| table.rows(group) as u64)
             .sum();

@@ -21,10 +21,13 @@ use super::journal::JournalFile;
 use super::lock::Lock;
 use crate::canon;
 use crate::engine::trail::Digest;
+use crate::reading;
 use std::fs::{self, File};
 use std::io::{self, Write};
 use std::path::{Path, PathBuf};
 
+/// A larger file of a finished folder is not shown.
+const LARGEST_FILE: u64 = 1 << 28;
 /// Turns in which a folder may go away under our feet.
 const TRIES: u32 = 10;
 
@@ -96,6 +99,7 @@ impl Folder {
             // Another process that ends its run gives the folder its name between these steps; then its results
             // are found at the next turn.
             tries += 1;
+            plain(&self.open)?;
             match fs::create_dir_all(self.open.join("data/inputs")) {
                 Err(fault) if fault.kind() == io::ErrorKind::NotFound && tries < TRIES => continue,
                 made => made.map_err(|fault| RecordFault::place(&self.open, &fault))?,
@@ -172,9 +176,41 @@ impl Open {
     }
 }
 
+/// Refuses a folder that is a link or holds one, or a pipe or device: what is written into it, or cleared, would be
+/// written elsewhere.
+fn plain(folder: &Path) -> Result<(), RecordFault> {
+    let mut left = vec![folder.to_owned()];
+    while let Some(path) = left.pop() {
+        let disk = |fault| RecordFault::disk("read", &path, &fault);
+        let gone = |fault: &io::Error| fault.kind() == io::ErrorKind::NotFound;
+        let kind = match fs::symlink_metadata(&path) {
+            Ok(about) => about.file_type(),
+            // Not there yet, or given its name by another process just now.
+            Err(fault) if gone(&fault) => continue,
+            Err(fault) => return Err(disk(fault)),
+        };
+        if kind.is_file() {
+            continue;
+        }
+        if !kind.is_dir() {
+            let words = "it is neither a file nor a folder, and nothing is written through it";
+            return Err(RecordFault::foreign(&path, words));
+        }
+        match fs::read_dir(&path) {
+            Ok(entries) => left.extend(entries.flatten().map(|entry| entry.path())),
+            Err(fault) if gone(&fault) => {}
+            Err(fault) => return Err(disk(fault)),
+        }
+    }
+    Ok(())
+}
+
 /// Removes what a record no longer needs once it has its name. What a kill leaves of it is removed the next
-/// time, so a failure here is none.
+/// time, so a failure here is none. A link leads to a folder that we did not name.
 fn clear(done: &Path) {
+    if !fs::symlink_metadata(done).is_ok_and(|about| about.is_dir()) {
+        return;
+    }
     for name in ["journal", "lock"] {
         let _ = fs::remove_file(done.join(name));
     }
@@ -183,7 +219,8 @@ fn clear(done: &Path) {
 /// The text of a file of a finished folder.
 pub fn read(folder: &Path, name: &str) -> Result<String, RecordFault> {
     let path = folder.join(name);
-    fs::read_to_string(&path).map_err(|fault| RecordFault::disk("read", &path, &fault))
+    let read = reading::read(&path, LARGEST_FILE).map_err(RecordFault::Input)?;
+    String::from_utf8(read.bytes).map_err(|_| RecordFault::foreign(&path, "it is not UTF-8"))
 }
 
 #[cfg(test)]

@@ -246,8 +246,12 @@ impl JournalReader {
 
 impl Reader for JournalReader {
     fn column(&self, mark: Mark, quantity: usize, into: &mut Vec<f64>) -> Result<(), String> {
-        let draws = self.header(mark)?.draws;
-        let size = u64::from(draws) * 8;
+        let header = self.header(mark)?;
+        if quantity >= header.quantities as usize {
+            let unlike = io::Error::other("a block does not have the quantities of this plan");
+            return Err(self.words(&unlike));
+        }
+        let size = u64::from(header.draws) * 8;
         let at = mark.0 + HEADER as u64 + quantity as u64 * size;
         let mut bytes = vec![0; size as usize];
         self.file

@@ -22,7 +22,9 @@ pub mod survey;
 mod sync;
 pub mod trail_file;
 
-pub use bag::{CIRCUMSTANCES, check as check_bag, payload};
+pub use bag::{
+    CIRCUMSTANCES, check as check_bag, label_differences, payload, pitfalls, write as write_bag,
+};
 pub use checkpoints::Checkpoints;
 pub use circumstances::Circumstances;
 pub use draws_file::DrawsFile;

@@ -99,6 +99,8 @@ impl Account {
         let findings = found
             .into_iter()
             .take(MOST)
+            // A stranger's names and words must not move the reader's terminal.
+            .map(|words| words.replace(|c: char| c.is_control() && c != '\n', " "))
             .map(|words| Finding { part, words });
         self.findings.extend(findings);
         if more > 0 {

@@ -12,6 +12,11 @@ pub fn check(folder: &Path) -> Vec<String> {
     record::check_bag(folder).unwrap_or_else(|fault| vec![fault.to_string()])
 }
 
+/// What is not to be read at all.
+pub fn pitfalls(folder: &Path) -> Vec<String> {
+    record::pitfalls(folder).unwrap_or_else(|fault| vec![fault.to_string()])
+}
+
 /// Files under `data/` that a record of this plan does not have.
 pub fn strangers(folder: &Path, opened: &Opened, rendered: &[&str]) -> Vec<String> {
     let mut known: BTreeSet<String> = rendered.iter().map(|name| (*name).to_owned()).collect();

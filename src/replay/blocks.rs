@@ -52,10 +52,7 @@ pub fn replay(
         Audit::All => (all, None),
         Audit::Part { part, seed } => {
             let chosen = lot::draw(&all, part, &seed);
-            let chance = Chance {
-                chosen: chosen.iter().map(Piece::blocks).sum(),
-                all: blocks,
-            };
+            let chance = Chance::new(&chosen, &all);
             let firsts = firsts(&ready).into_iter();
             let further = firsts.filter(|first| !chosen.iter().any(|piece| holds(piece, first)));
             let further: Vec<Piece> = further.collect();
@@ -90,7 +87,8 @@ fn get_ready<'a>(
 ) -> Result<Ready<'a>, String> {
     let blocks = trail.chains[0].len() as u64 - 1;
     let path = folder.join(checkpoints::name(point));
-    let states = Checkpoints::open(&path, blocks * trail.chains.len() as u64)?;
+    let size = opened.plan.points[point].model.state_size();
+    let states = Checkpoints::open(&path, blocks * trail.chains.len() as u64, size)?;
     let kept: Vec<u64> = states.blocks(0).collect();
     for chain in 0..trail.chains.len() {
         if states.blocks(chain).ne(kept.iter().copied()) {

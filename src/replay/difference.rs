@@ -56,22 +56,38 @@ pub fn text(stored: &[u8], made: &[u8], given: &str) -> Option<String> {
     if stored == made {
         return None;
     }
-    let lines = |bytes: &[u8]| -> Vec<String> {
-        let text = String::from_utf8_lossy(bytes);
-        text.split('\n').map(str::to_owned).collect()
+    let same = stored.iter().zip(made).take_while(|(a, b)| a == b).count();
+    let from = made[..same]
+        .iter()
+        .rposition(|byte| *byte == b'\n')
+        .map_or(0, |end| end + 1);
+    let before = made[..from].iter().filter(|byte| **byte == b'\n').count();
+    // Where one text ends with the line before, the other's goes on with its end.
+    let (from, before) = match (stored.get(same), made.get(same)) {
+        (None, Some(b'\n')) | (Some(b'\n'), None) => (same + 1, before + 1),
+        _ => (from, before),
     };
-    let (stored, made) = (lines(stored), lines(made));
-    let at = stored.iter().zip(&made).position(|(a, b)| a != b);
-    let at = at.unwrap_or(stored.len().min(made.len()));
-    let line = |lines: &[String]| lines.get(at).map_or("nothing".into(), |line| short(line));
+    let line = |bytes: &[u8]| match bytes.get(from..) {
+        None => "nothing".into(),
+        Some(rest) => {
+            let end = rest
+                .iter()
+                .take(LONGEST_LINE)
+                .position(|byte| *byte == b'\n');
+            let end = end.unwrap_or(rest.len().min(LONGEST_LINE));
+            short(&String::from_utf8_lossy(&rest[..end]))
+        }
+    };
     Some(format!(
         "line {}: the record has {}, {given} {}",
-        at + 1,
-        line(&stored),
-        line(&made)
+        before + 1,
+        line(stored),
+        line(made)
     ))
 }
 
+/// Bytes of a line that are looked at.
+const LONGEST_LINE: usize = 1 << 12;
 /// At most so many characters are shown.
 const SHOWN: usize = 160;
 

@@ -14,7 +14,7 @@ use std::path::Path;
 use std::sync::Arc;
 
 /// Blocks of a trail at most: a sanity bound on what a stranger's record may ask us to hold.
-const MOST_BLOCKS: u64 = 1 << 24;
+const MOST_BLOCKS: u64 = 1 << 23;
 
 /// What a record has of a point.
 pub struct PointTrail {
@@ -110,6 +110,13 @@ fn point(
             false => Err(of("was closed before its draws, and has a trail".into())),
         };
     }
+    let rows = chains.iter().filter(|rows| !rows.is_empty()).count();
+    if rows > 0 && rows < chains.len() {
+        return Err(of(format!(
+            "has {rows} chains in it, and the plan has {}",
+            chains.len()
+        )));
+    }
     let starts = match (
         record::starts(plan, index),
         chains.iter().all(Vec::is_empty),
@@ -131,6 +138,14 @@ fn point(
         return Err(of("was not closed where the plan says".into()));
     }
     let task = Task::of(plan, index);
+    let longest = (chains[0].len() as u64).saturating_mul(task.block);
+    if burn_in.saturating_add(draws) > longest {
+        return Err(of(format!(
+            "has {} blocks for {burn_in} draws of burn-in and {draws} draws, and a block of this plan has at most {}",
+            chains[0].len() - 1,
+            task.block
+        )));
+    }
     let Some(cut) = blocks(&task, burn_in, draws) else {
         return Err(of(format!(
             "ends after {burn_in} draws of burn-in and {draws} draws, where no block of this plan ends"
@@ -211,7 +226,7 @@ fn check_chain(
     let Some((start, rows)) = rows.split_first() else {
         return at(0, "is missing");
     };
-    if (start.state_hash, start.draws) != (*hash, 0) {
+    if (start.state_hash, start.draws, start.phase) != (*hash, 0, Phase::BurnIn) {
         return at(0, "is not the start that plan and root give");
     }
     if start.link != *link || start.draws_digest != trail::plain(&[]) {

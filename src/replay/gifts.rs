@@ -139,6 +139,10 @@ fn refuse(search: &Search<'_>, record: &Path, words: &str) {
 
 /// A record that shares points with the plan, resolved anew; `None` where it shares none, or draws other numbers.
 fn source(path: &Path, search: &Search<'_>) -> Result<Option<Source>, String> {
+    let pitfalls = record::pitfalls(path).map_err(|fault| fault.to_string())?;
+    if let Some(words) = pitfalls.into_iter().next() {
+        return Err(words);
+    }
     let stated = opened::stated(path)?;
     if !stated.draws_alike() {
         return Ok(None);
@@ -222,7 +226,8 @@ fn offer(
     let name = checkpoints::name(theirs);
     let rows = &trail.chains[0];
     let most = (rows.len() as u64 - 1) * trail.chains.len() as u64;
-    let states = Checkpoints::open(&source.path.join(&name), most)
+    let size = plan.points[theirs].model.state_size();
+    let states = Checkpoints::open(&source.path.join(&name), most, size)
         .map_err(|words| format!("{name}: {words}"))?;
     let pieces = pieces(task, trail, &states, chains);
     let gift = Gift {

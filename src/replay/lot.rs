@@ -32,43 +32,57 @@ impl Piece {
     }
 }
 
-/// Draws pieces by lot until they hold this part of all blocks.
+/// Draws this part of the pieces by lot, at least one. Their number does not depend on which are drawn, so that
+/// each has the same chance.
 pub fn draw(pieces: &[Piece], part: f64, seed: &[u8; 32]) -> Vec<Piece> {
-    let all: u64 = pieces.iter().map(Piece::blocks).sum();
-    let wanted = part * all as f64;
+    let wanted = (part * pieces.len() as f64).ceil() as usize;
     let mut left: Vec<Piece> = pieces.to_vec();
     let mut stream = Stream::new(seed, Purpose::Test);
     let mut chosen = Vec::new();
-    let mut blocks = 0;
-    while (blocks as f64) < wanted && !left.is_empty() {
+    while chosen.len() < wanted && !left.is_empty() {
         let at = index(&mut stream, left.len() as u64) as usize;
-        let piece = left.swap_remove(at);
-        blocks += piece.blocks();
-        chosen.push(piece);
+        chosen.push(left.swap_remove(at));
     }
     chosen
 }
 
-/// With what probability altered blocks are found, when so many of all blocks are drawn again by lot.
+/// With what probability altered blocks are found, when some of all pieces are drawn again by lot. Blocks of one
+/// piece are found together or not at all, and a forger would alter such.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Chance {
-    /// Blocks chosen by lot.
+    /// Blocks chosen by lot, and blocks of the record.
     pub chosen: u64,
-    /// Blocks of the record.
     pub all: u64,
+    /// Pieces chosen by lot, and pieces of the record.
+    pub pieces_chosen: u64,
+    pub pieces: u64,
+    /// Blocks of the largest piece.
+    pub largest: u64,
 }
 
 impl Chance {
-    /// The probability that at least one of `altered` blocks, anywhere in the record, is drawn again: one less
-    /// the hypergeometric probability of none.
+    /// Of pieces chosen by lot among all.
+    pub fn new(chosen: &[Piece], all: &[Piece]) -> Chance {
+        Chance {
+            chosen: chosen.iter().map(Piece::blocks).sum(),
+            all: all.iter().map(Piece::blocks).sum(),
+            pieces_chosen: chosen.len() as u64,
+            pieces: all.len() as u64,
+            largest: all.iter().map(Piece::blocks).max().unwrap_or(1),
+        }
+    }
+
+    /// The probability that at least one of `altered` blocks is drawn again when they stand where they are found
+    /// least, in as few pieces as hold them: one less the hypergeometric probability of none.
     pub fn of(&self, altered: u64) -> f64 {
+        let hidden = altered.div_ceil(self.largest).min(self.pieces);
         let mut missed = 1.0;
-        for one in 0..altered.min(self.all) {
-            let left = (self.all - self.chosen) as f64 - one as f64;
+        for one in 0..hidden {
+            let left = (self.pieces - self.pieces_chosen) as f64 - one as f64;
             if left <= 0.0 {
                 return 1.0;
             }
-            missed *= left / (self.all - one) as f64;
+            missed *= left / (self.pieces - one) as f64;
         }
         1.0 - missed
     }
@@ -84,10 +98,13 @@ mod tests {
     use super::*;
 
     #[test]
-    fn chances_are_hypergeometric() {
-        let chance = Chance {
+    fn chances_are_hypergeometric_in_pieces() {
+        let mut chance = Chance {
             chosen: 5,
             all: 100,
+            pieces_chosen: 5,
+            pieces: 100,
+            largest: 1,
         };
         assert!((chance.of(1) - 0.05).abs() < 1e-15);
         // 1 - C(95, 10) / C(100, 10), by hand.
@@ -98,6 +115,10 @@ mod tests {
         assert_eq!(chance.of(96), 1.0);
         assert_eq!(chance.of(1000), 1.0);
         assert_eq!(chance.one_in_a_hundred(), 1);
+        // Ten blocks that lie in one piece are found as seldom as one; twelve take a second.
+        chance.largest = 11;
+        assert!((chance.of(10) - 0.05).abs() < 1e-15);
+        assert!((chance.of(12) - (1.0 - 95.0 / 100.0 * 94.0 / 99.0)).abs() < 1e-15);
     }
 
     #[test]

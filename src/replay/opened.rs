@@ -16,9 +16,9 @@ pub const LARGEST_JSON: u64 = 1 << 28;
 /// The plan of a record, made from its study.
 pub struct Opened {
     pub plan: Plan,
-    /// Where `plan.json` differs from it.
+    /// Where `plan.json` and the index of inputs differ from it.
     pub differences: Vec<String>,
-    /// The paths under `data/inputs/` that the index names.
+    /// The paths under `data/inputs/` of what the study was resolved with.
     pub inputs: Vec<String>,
 }
 
@@ -53,7 +53,7 @@ pub fn stated(folder: &Path) -> Result<Stated, String> {
             .get("title")
             .and_then(Json::as_text)
             .unwrap_or_default()
-            .into(),
+            .replace(char::is_control, " "),
         json,
     })
 }
@@ -90,15 +90,6 @@ pub fn open(
         .map_err(|_| one(format!("{name} cannot be read")))?
         .bytes;
     let files = record::kept(folder).map_err(one)?;
-    let inputs = match &files {
-        reading::Files::Kept(kept) => kept.values(),
-        reading::Files::Folder(_) => unreachable!("a record keeps its inputs"),
-    };
-    let inputs = inputs.filter_map(|path| {
-        let name = path.file_name()?.to_str()?;
-        Some(format!("data/inputs/{name}"))
-    });
-    let inputs = inputs.collect();
     let resolved = reading::text(bytes, name)
         .map_err(|fault| vec![fault])
         .and_then(|source| study::resolve_text(source, &files, registry));
@@ -112,13 +103,27 @@ pub fn open(
             show(&faults, look)
         ))
     })?;
+    let kept = |input: &crate::plan::Input| {
+        let name = input.path.file_name()?.to_str()?;
+        Some(format!("data/inputs/{name}"))
+    };
+    let inputs = plan.inputs.iter().filter_map(kept).collect();
+    let unused = match &files {
+        reading::Files::Kept(kept) => kept.keys(),
+        reading::Files::Folder(_) => unreachable!("a record keeps its inputs"),
+    };
+    let unused =
+        unused.filter(|written| plan.inputs.iter().all(|input| input.written != **written));
+    let unused: Vec<String> = unused
+        .map(|written| format!("data/inputs.json names {written:?}, which the study does not"))
+        .collect();
     plan.numerics = stated.numerics;
     plan.closed = closed(&stated.json, plan.points.len()).map_err(one)?;
     let differences = difference::json(&stated.json, &plan.json(), "the study gives");
     let named = |words: String| format!("data/plan.json: {words}");
     Ok(Opened {
         plan,
-        differences: differences.into_iter().map(named).collect(),
+        differences: differences.into_iter().map(named).chain(unused).collect(),
         inputs,
     })
 }

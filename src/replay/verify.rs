@@ -44,6 +44,15 @@ fn parts(folder: &Path, request: &Request<'_>) -> Account {
     let mut account = Account::default();
     let tell = request.progress;
     tell("files");
+    let pitfalls = bag::pitfalls(folder);
+    if !pitfalls.is_empty() {
+        account.enter(Part::Bag, pitfalls, String::new());
+        return rest(
+            account,
+            Part::Plan,
+            "what is neither a file nor a folder is not looked into",
+        );
+    }
     let mut of_bag = bag::check(folder);
     let stated = match opened::stated(folder) {
         Ok(stated) => stated,
@@ -173,6 +182,11 @@ fn made(
     }
     of_pages.extend(crate_differs(folder, &outcome, &account.result_digest));
     let digest = &account.result_digest;
+    of_pages.extend(record::label_differences(
+        folder,
+        &opened.plan.title,
+        digest,
+    ));
     let looked_at = format!("every figure and standing comes out the same; result digest {digest}");
     account.enter(Part::Figures, of_figures, looked_at);
     let looked_at = "tables, page and crate come out the same".into();

@@ -5,9 +5,24 @@ const DEEPEST: usize = 16;
 /// A structure in a list takes at least this many bytes in an honest footer.
 const LEAST_STRUCTURE: usize = 3;
 
+/// Structures in lists at most: columns of groups of rows, for the most part. The library makes about 700 bytes of
+/// each.
+const MOST_STRUCTURES: u64 = 1 << 20;
+
 struct Walk<'a> {
     bytes: &'a [u8],
     at: usize,
+    structures: u64,
+}
+
+impl<'a> Walk<'a> {
+    fn new(bytes: &'a [u8]) -> Walk<'a> {
+        Walk {
+            bytes,
+            at: 0,
+            structures: 0,
+        }
+    }
 }
 
 impl Walk<'_> {
@@ -73,6 +88,12 @@ impl Walk<'_> {
         if count > left as u64 {
             return None;
         }
+        if kind == 12 {
+            self.structures += count;
+            if self.structures > MOST_STRUCTURES {
+                return None;
+            }
+        }
         for _ in 0..count {
             match kind {
                 // In a list a boolean is a byte.
@@ -128,37 +149,45 @@ impl Walk<'_> {
 
 /// Whether a footer is one whole structure whose counts its own bytes bear out.
 pub fn footer(bytes: &[u8]) -> bool {
-    let mut walk = Walk { bytes, at: 0 };
+    let mut walk = Walk::new(bytes);
     walk.structure(0).is_some() && walk.at == bytes.len()
 }
 
-/// Whether the bytes of a column are whole data pages, none of which claims more than `most` bytes when
-/// unpacked, all together no more than `all`.
-pub fn pages(bytes: &[u8], most: u64, all: u64) -> bool {
+/// A data page of plain cells.
+pub struct Page<'a> {
+    pub cells: usize,
+    pub unpacked: usize,
+    pub packed: &'a [u8],
+}
+
+/// The pages that the bytes of a column are made of; `None` where they are not whole data pages of plain cells, or
+/// claim to unpack to more than `all` bytes together.
+pub fn pages(bytes: &[u8], all: u64) -> Option<Vec<Page<'_>>> {
     // Fields of a page header.
     const KIND: usize = 1;
     const UNPACKED: usize = 2;
     const PACKED: usize = 3;
     const DATA: i64 = 5;
+    const CELLS: usize = 16 + 1;
     const ENCODING: usize = 16 + 2;
-    let mut walk = Walk { bytes, at: 0 };
-    let mut sum = 0;
+    let mut walk = Walk::new(bytes);
+    let mut pages = Vec::new();
+    let mut left = all;
     while walk.at < bytes.len() {
-        let Some(fields) = walk.numbers(Some(DATA)) else {
-            return false;
-        };
-        let (Ok(unpacked), Ok(packed)) = (
-            u64::try_from(fields[UNPACKED]),
-            u64::try_from(fields[PACKED]),
-        ) else {
-            return false;
-        };
-        sum += unpacked.min(all + 1);
-        let plain = fields[KIND] == 0 && fields[ENCODING] == 0;
-        let honest = plain && unpacked <= most && sum <= all;
-        if !honest || walk.skip(packed).is_none() {
-            return false;
+        let fields = walk.numbers(Some(DATA))?;
+        if (fields[KIND], fields[ENCODING]) != (0, 0) {
+            return None;
         }
+        let size = |field: usize| u64::try_from(fields[field]).ok();
+        let unpacked = size(UNPACKED)?;
+        left = left.checked_sub(unpacked)?;
+        let from = walk.at;
+        walk.skip(size(PACKED)?)?;
+        pages.push(Page {
+            cells: usize::try_from(size(CELLS)?).ok()?,
+            unpacked: usize::try_from(unpacked).ok()?,
+            packed: &bytes[from..walk.at],
+        });
     }
-    true
+    Some(pages)
 }

@@ -1,9 +1,11 @@
 //! The columnar files of a record: Parquet with plain required columns, one compression, no statistics and no
 //! dictionaries, so that equal content has equal bytes and any outside reader can read it.
 //!
-//! What is read may come from a stranger. The footer and every page header are walked by [`guard`] before the
-//! library sees them: no count in them may ask for more memory than the table it claims to be can need.
+//! What is read may come from a stranger. The footer is walked by [`guard`] before the library sees it, page headers
+//! are walked there alone, and pages are read here: no count may ask for more memory than the table it claims to be
+//! can need, and nothing stands beside the cells that another reader would be told.
 
+mod cells;
 mod guard;
 mod read;
 mod write;

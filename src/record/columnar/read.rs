@@ -1,31 +1,32 @@
 //! Reading, a column of a group of rows at a time.
 
 use super::write::schema;
-use super::{Cells, Column, Kind, guard};
-use bytes::Bytes;
+use super::{Cells, Column, Kind, cells, guard};
 use parquet::basic::Compression;
-use parquet::column::reader::ColumnReader;
-use parquet::data_type::{ByteArray, FixedLenByteArray};
-use parquet::errors::ParquetError;
 use parquet::file::metadata::{ColumnChunkMetaData, ParquetMetaData, ParquetMetaDataReader};
-use parquet::file::serialized_reader::SerializedPageReader;
-use std::fs::File;
+use std::fs::{self, File};
 use std::os::unix::fs::FileExt;
 use std::path::Path;
-use std::sync::Arc;
 
 /// The last bytes of a file: length of the footer and the magic word.
 const TAIL: u64 = 8;
 /// A footer longer than this is refused.
 const LONGEST_FOOTER: u64 = 1 << 28;
-/// Bytes of one column of one group, unpacked, at most. We write far smaller ones.
-const LARGEST_COLUMN: u64 = 1 << 30;
+/// Bytes of page headers and frames beside the packed cells of a column, at most.
+const SPARE: u64 = 1 << 20;
+/// Rows of a group at most: of draws, trail and states we write no more.
+const MOST_ROWS: i64 = 1 << 17;
+/// Bytes of a text at most, on average over a group: what we write are words.
+const LONGEST_TEXT: u64 = 64;
+/// Bytes of one column of one group, unpacked, where nothing tells how long its cells may be.
+const LARGEST_COLUMN: u64 = 1 << 28;
 
 /// An open file, its footer read and its columns those expected.
 pub struct Table {
     file: File,
     columns: Vec<Column>,
     about: ParquetMetaData,
+    most_bytes: u64,
 }
 
 impl Table {
@@ -40,10 +41,20 @@ impl Table {
         let mut rows: i64 = 0;
         for group in about.row_groups() {
             let count = group.num_rows();
-            if count < 0 || count > i64::from(i32::MAX) {
+            if !(0..=MOST_ROWS).contains(&count) {
                 return Err("a group of rows has an impossible length".into());
             }
+            if group.columns().len() != columns.len() {
+                return Err("a group of rows lacks columns".into());
+            }
+            if group.sorting_columns().is_some() || !group.columns().iter().all(plain) {
+                return Err("it says more of its columns than records do".into());
+            }
             rows += count;
+        }
+        // What stands beside the cells could tell another reader something else than the cells do.
+        if about.file_metadata().key_value_metadata().is_some() {
+            return Err("it has notes beside its columns".into());
         }
         if rows != about.file_metadata().num_rows() {
             return Err("its groups do not make up its rows".into());
@@ -52,7 +63,14 @@ impl Table {
             file,
             columns: columns.to_vec(),
             about,
+            most_bytes: LARGEST_COLUMN,
         })
+    }
+
+    /// With cells of any length held to so many bytes, a column of a group.
+    pub fn within(mut self, most_bytes: u64) -> Table {
+        self.most_bytes = most_bytes;
+        self
     }
 
     /// Groups of rows.
@@ -72,25 +90,32 @@ impl Table {
         let wrong = |what: &str| format!("column {name:?} of group {} {what}", group + 1);
         let rows = self.rows(group);
         let about = self.about.row_group(group).column(column);
-        let bytes = self.bytes(about, *kind, rows).map_err(wrong)?;
-        let unread = |fault: ParquetError| wrong(&format!("cannot be read: {fault}"));
-        let pages = SerializedPageReader::new(Arc::new(bytes), &placed(about), rows, None);
-        let pages = Box::new(pages.map_err(unread)?);
-        let reader = parquet::column::reader::get_column_reader(about.column_descr_ptr(), pages);
-        let cells = take(reader, *kind, rows).map_err(unread)?;
-        match cells {
-            Some(cells) if cells.len() == rows => Ok(cells),
-            _ => Err(wrong("does not have the cells it claims")),
+        let (bytes, most) = self.bytes(about, *kind, rows).map_err(wrong)?;
+        let pages = guard::pages(&bytes, most)
+            .ok_or_else(|| wrong("has pages that are not what records store"))?;
+        let mut cells = cells::none(*kind, rows);
+        for page in pages {
+            let plain = zstd::bulk::decompress(page.packed, page.unpacked)
+                .ok()
+                .filter(|plain| plain.len() == page.unpacked)
+                .ok_or_else(|| wrong("has a page that cannot be unpacked"))?;
+            cells::add(&mut cells, &plain, page.cells)
+                .ok_or_else(|| wrong("has a page without the cells it claims"))?;
+        }
+        if cells.len() == rows {
+            Ok(cells)
+        } else {
+            Err(wrong("does not have the cells it claims"))
         }
     }
 
-    /// The bytes of a column of a group, walked.
+    /// The bytes of a column of a group, and how many they may unpack to.
     fn bytes(
         &self,
         about: &ColumnChunkMetaData,
         kind: Kind,
         rows: usize,
-    ) -> Result<Bytes, &'static str> {
+    ) -> Result<(Vec<u8>, u64), &'static str> {
         let length = self.file.metadata().map_err(|_| "is out of reach")?.len();
         let (Ok(from), Ok(size)) = (
             u64::try_from(about.data_page_offset()),
@@ -106,33 +131,40 @@ impl Table {
             Kind::Short => rows * 4,
             Kind::Long | Kind::Real => rows * 8,
             Kind::Digest => rows * 32,
-            Kind::Text | Kind::Bytes => LARGEST_COLUMN,
+            Kind::Text => rows * LONGEST_TEXT,
+            Kind::Bytes => self.most_bytes,
         };
         let alike = about.num_values() == rows as i64
             && about.dictionary_page_offset().is_none()
             && matches!(about.compression(), Compression::ZSTD(_));
-        if !alike || unpacked > LARGEST_COLUMN {
+        // Packed, incompressible bytes may be a little longer than they are.
+        if !alike || size > unpacked + unpacked / 64 + SPARE {
             return Err("is not stored as records store it");
         }
         let mut bytes = vec![0; size as usize];
         self.file
             .read_exact_at(&mut bytes, from)
             .map_err(|_| "cannot be read from the disk")?;
-        if !guard::pages(&bytes, unpacked, unpacked) {
-            return Err("has pages that are not what records store");
-        }
-        Ok(bytes.into())
+        Ok((bytes, unpacked))
     }
 }
 
-/// The same column where it lies in its own bytes.
-fn placed(about: &ColumnChunkMetaData) -> ColumnChunkMetaData {
-    let moved = about.clone().into_builder().set_data_page_offset(0);
-    moved.build().expect("only its place was changed")
+/// Whether a column is told of as records tell of theirs: no statistics or indices, nothing in another file.
+fn plain(about: &ColumnChunkMetaData) -> bool {
+    about.statistics().is_none()
+        && about.file_path().is_none()
+        && about.index_page_offset().is_none()
+        && about.column_index_offset().is_none()
+        && about.offset_index_offset().is_none()
+        && about.bloom_filter_offset().is_none()
 }
 
 fn footer(path: &Path) -> Result<(File, ParquetMetaData), String> {
     let said = |fault: std::io::Error| format!("it cannot be read: {fault}");
+    // Opening a pipe would wait for a writer.
+    if !fs::metadata(path).map_err(said)?.is_file() {
+        return Err("it is no file".into());
+    }
     let file = File::open(path).map_err(said)?;
     let length = file.metadata().map_err(said)?.len();
     let mut tail = [0; TAIL as usize];
@@ -155,45 +187,4 @@ fn footer(path: &Path) -> Result<(File, ParquetMetaData), String> {
     let about = ParquetMetaDataReader::decode_metadata(&bytes)
         .map_err(|fault| format!("its footer cannot be read: {fault}"))?;
     Ok((file, about))
-}
-
-fn take(reader: ColumnReader, kind: Kind, rows: usize) -> Result<Option<Cells>, ParquetError> {
-    macro_rules! all {
-        ($column:expr) => {{
-            let mut column = $column;
-            let mut cells = Vec::new();
-            while cells.len() < rows {
-                let (_, values, _) =
-                    column.read_records(rows - cells.len(), None, None, &mut cells)?;
-                if values == 0 {
-                    break;
-                }
-            }
-            cells
-        }};
-    }
-    Ok(match (reader, kind) {
-        (ColumnReader::Int32ColumnReader(column), Kind::Short) => Some(Cells::Short(all!(column))),
-        (ColumnReader::Int64ColumnReader(column), Kind::Long) => Some(Cells::Long(all!(column))),
-        (ColumnReader::DoubleColumnReader(column), Kind::Real) => Some(Cells::Real(all!(column))),
-        (ColumnReader::ByteArrayColumnReader(column), Kind::Text) => {
-            let cells: Vec<ByteArray> = all!(column);
-            let texts = cells.iter().map(|cell| cell.as_utf8().map(str::to_owned));
-            Some(Cells::Text(texts.collect::<Result<_, _>>()?))
-        }
-        (ColumnReader::ByteArrayColumnReader(column), Kind::Bytes) => {
-            let cells: Vec<ByteArray> = all!(column);
-            Some(Cells::Bytes(
-                cells.iter().map(|c| c.data().to_vec()).collect(),
-            ))
-        }
-        (ColumnReader::FixedLenByteArrayColumnReader(column), Kind::Digest) => {
-            let cells: Vec<FixedLenByteArray> = all!(column);
-            let digests = cells.iter().map(|cell| cell.data().try_into().ok());
-            digests
-                .collect::<Option<Vec<[u8; 32]>>>()
-                .map(Cells::Digest)
-        }
-        _ => None,
-    })
 }

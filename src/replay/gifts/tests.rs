@@ -73,7 +73,7 @@ fn record(chains: usize, cut: &[(Phase, u64)], kept: &[u64]) -> (PointTrail, Che
     let folder = tempfile::tempdir().unwrap();
     let path = folder.path().join("states.parquet");
     checkpoints::write(&path, &vec![blocks; chains], kept, &Blank).unwrap();
-    (trail, Checkpoints::open(&path, 1000).unwrap())
+    (trail, Checkpoints::open(&path, 1000, 100).unwrap())
 }
 
 /// Draws, the block of the record that it ends with, and whether its states are kept.
