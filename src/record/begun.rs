@@ -27,6 +27,16 @@ pub struct Begun {
     root: String,
 }
 
+/// The runs of other plans begun under a name.
+pub struct Earlier {
+    /// In order, each with what came of it; the latest, where there are many.
+    pub runs: Json,
+    /// How many before these are not told.
+    pub left_out: u64,
+    /// What is wrong with the list, in words.
+    pub fault: Option<String>,
+}
+
 /// What a list holds.
 struct Lines {
     /// Of each line its text.
@@ -98,14 +108,16 @@ impl Begun {
         })
     }
 
-    /// The runs of other plans begun under this name, in order, with what came of each; and in words what is wrong
-    /// with the list.
-    pub fn earlier(&self) -> (Json, Option<String>) {
+    /// The runs of other plans begun under this name.
+    pub fn earlier(&self) -> Earlier {
         let lines = match File::open(&self.path).and_then(|mut file| read(&mut file)) {
             Ok(lines) => lines,
             Err(fault) => {
-                let words = format!("{NAME} cannot be read: {fault}");
-                return (Json::Array(Vec::new()), Some(words));
+                return Earlier {
+                    runs: Json::Array(Vec::new()),
+                    left_out: 0,
+                    fault: Some(format!("{NAME} cannot be read: {fault}")),
+                };
             }
         };
         let mut runs: Vec<Vec<(&'static str, Json)>> = Vec::new();
@@ -145,12 +157,12 @@ impl Begun {
             }
         }
         runs.retain(|run| run[0].1.as_text() != Some(&self.plan_digest));
-        let from = runs.len().saturating_sub(TOLD);
-        if from > 0 {
-            wrong.get_or_insert(format!("{from} runs before the last {TOLD} are left out"));
+        let left_out = runs.len().saturating_sub(TOLD);
+        Earlier {
+            runs: Json::array(runs.into_iter().skip(left_out).map(Json::object)),
+            left_out: left_out as u64,
+            fault: wrong,
         }
-        let runs = runs.into_iter().skip(from).map(Json::object);
-        (Json::array(runs), wrong)
     }
 }
 
@@ -186,18 +198,20 @@ mod tests {
     #[test]
     fn earlier_runs_are_told_with_what_came_of_them() {
         let (folder, first, second) = list();
-        let (runs, wrong) = second.earlier();
+        let Earlier {
+            runs, fault: wrong, ..
+        } = second.earlier();
         assert_eq!(wrong, None);
         let said = |run: &Json, name: &str| run.get(name).and_then(Json::as_text).map(String::from);
         assert_eq!(runs.items().len(), 1);
         assert_eq!(said(&runs.items()[0], "root"), Some("one".into()));
         assert_eq!(said(&runs.items()[0], "outcome"), Some("sealed".into()));
-        let (runs, _) = first.earlier();
+        let runs = first.earlier().runs;
         assert_eq!(said(&runs.items()[0], "root"), Some("two".into()));
         assert_eq!(said(&runs.items()[0], "outcome"), None);
         let none = Begun::of(&folder.path().join("gone"), "c", "three");
         assert!(none.begins().is_err());
-        assert!(none.earlier().1.is_some());
+        assert!(none.earlier().fault.is_some());
     }
 
     #[test]
@@ -210,14 +224,16 @@ mod tests {
         let changed = whole.replace("\"one\"", "\"four\"");
         for (text, line) in [(without, 2), (changed, 2), (format!("x\n{whole}"), 1)] {
             fs::write(&path, text).unwrap();
-            let (_, wrong) = second.earlier();
+            let wrong = second.earlier().fault;
             let wrong = wrong.expect("a fault");
             assert!(wrong.contains(&format!("line {line}:")), "{wrong}");
             first.begins().unwrap();
         }
         fs::write(&path, &whole[..whole.len() - 9]).unwrap();
         second.ends("sealed").unwrap();
-        let (runs, wrong) = first.earlier();
+        let Earlier {
+            runs, fault: wrong, ..
+        } = first.earlier();
         assert!(wrong.is_some_and(|wrong| wrong.contains("line 4: it cannot be read")));
         let outcome = runs.items()[0].get("outcome").and_then(Json::as_text);
         assert_eq!(outcome, Some("sealed"));
@@ -239,7 +255,9 @@ mod tests {
                 });
             }
         });
-        let (runs, wrong) = Begun::of(folder.path(), "", "").earlier();
+        let Earlier {
+            runs, fault: wrong, ..
+        } = Begun::of(folder.path(), "", "").earlier();
         assert_eq!((runs.items().len(), wrong), (8, None));
     }
 }

@@ -47,7 +47,7 @@ impl Circumstances {
         this.extend(counts.map(|(name, count)| (name, Json::Count(count))));
         let folder = open.path().parent().unwrap_or(open.path());
         let begun = Begun::of(folder, &hex(&plan.digest()), &plan.root);
-        let warning = begun.begins().err();
+        let warning = begun.begins().err().or_else(|| begun.earlier().fault);
         let this = this.into_iter();
         let circumstances = Circumstances {
             earlier,
@@ -89,11 +89,15 @@ impl Circumstances {
     pub fn save(&self, open: &Open) -> Result<Json, RecordFault> {
         let mut starts = self.earlier.clone();
         starts.push(Json::object(self.this.clone()));
-        let (runs, fault) = self.begun.earlier();
+        let earlier = self.begun.earlier();
         let all = Json::object([
             ("starts", Json::Array(starts)),
-            ("earlier_runs", runs),
-            ("earlier_runs_fault", fault.map_or(Json::Null, Json::text)),
+            ("earlier_runs", earlier.runs),
+            ("earlier_runs_left_out", Json::Count(earlier.left_out)),
+            (
+                "earlier_runs_fault",
+                earlier.fault.map_or(Json::Null, Json::text),
+            ),
         ]);
         open.write(NAME, all.pretty().as_bytes())?;
         Ok(all)
