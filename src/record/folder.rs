@@ -182,10 +182,14 @@ fn plain(folder: &Path) -> Result<(), RecordFault> {
     let mut left = vec![folder.to_owned()];
     while let Some(path) = left.pop() {
         let disk = |fault| RecordFault::disk("read", &path, &fault);
-        let gone = |fault: &io::Error| fault.kind() == io::ErrorKind::NotFound;
+        let gone = |fault: &io::Error| {
+            use io::ErrorKind::{NotADirectory, NotFound};
+            matches!(fault.kind(), NotFound | NotADirectory)
+        };
         let kind = match fs::symlink_metadata(&path) {
             Ok(about) => about.file_type(),
-            // Not there yet, or given its name by another process just now.
+            // Not there yet, not to be had where it should be (which who makes it will be told), or given its name
+            // by another process just now.
             Err(fault) if gone(&fault) => continue,
             Err(fault) => return Err(disk(fault)),
         };

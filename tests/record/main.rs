@@ -7,6 +7,7 @@
 
 #[path = "../common/mod.rs"]
 mod common;
+mod decisions;
 mod forged;
 mod forger;
 mod hostile;
