@@ -208,7 +208,7 @@ fn more_chains_and_fewer_estimands_take_what_there_is() {
     }
 }
 
-/// One draw changed, its file's sum in the manifest mended, and that of the manifest.
+/// One draw changed; every sum of the bag is mended.
 struct Forged(DrawsFile);
 
 impl Reader for Forged {
@@ -241,6 +241,23 @@ fn mend(record: &Path, list: &str, name: &str) {
             false => format!("{line}\n"),
         });
     fs::write(record.join(list), mended.collect::<String>()).unwrap();
+}
+
+/// Mends the bytes that a bag says it holds, for a file that had `before` and has `after`.
+fn weigh(record: &Path, before: u64, after: u64) {
+    let path = record.join("bag-info.txt");
+    let text = fs::read_to_string(&path).unwrap();
+    let mended = text
+        .lines()
+        .map(|line| match line.strip_prefix("Payload-Oxum: ") {
+            None => format!("{line}\n"),
+            Some(oxum) => {
+                let (bytes, files) = oxum.split_once('.').unwrap();
+                let bytes: u64 = bytes.parse().unwrap();
+                format!("Payload-Oxum: {}.{files}\n", bytes - before + after)
+            }
+        });
+    fs::write(&path, mended.collect::<String>()).unwrap();
 }
 
 #[test]
@@ -281,10 +298,13 @@ fn a_record_that_was_tampered_with_gives_nothing() {
             };
             let chains: Vec<Vec<Stood>> = (0..5).map(block).collect();
             let aside = here.path().join("aside");
+            let before = fs::metadata(&path).unwrap().len();
             draws_file::write(&aside, &quantities, &chains, &Forged(file)).unwrap();
             fs::rename(aside, &path).unwrap();
+            weigh(&record, before, fs::metadata(&path).unwrap().len());
             mend(&record, "manifest-sha256.txt", "data/draws/point-1.parquet");
             mend(&record, "tagmanifest-sha256.txt", "manifest-sha256.txt");
+            mend(&record, "tagmanifest-sha256.txt", "bag-info.txt");
             "chain 4, block 6 does not have the draws of the trail"
         } else {
             let mut bytes = fs::read(&path).unwrap();
