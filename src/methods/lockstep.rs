@@ -1,11 +1,9 @@
 //! The lane loops of the random walk: eight lanes in a register where the machine has them so wide, with the
-//! same bits where it has not, since no lane's arithmetic crosses to another.
+//! same bits where it has not, since no lane's arithmetic crosses to another. Where there are eight lanes or four,
+//! the compiler is told so: then it knows every distance.
 
 use super::gain::AdaptiveScale;
 use multiversion::multiversion;
-
-/// Lanes that go through a loop together.
-const BLOCK: usize = 8;
 
 /// Makes steps of the normals, each lane by its scale, and proposes for each moved coordinate its position and its
 /// row of the factor times the steps (in the order of the columns), or just its step without a factor. Coordinate `on[i]` of `position` and `proposal`, `i` of
@@ -24,12 +22,14 @@ pub fn add_steps(
     proposal: &mut [f64],
 ) {
     let lanes = scales.len();
-    let whole = lanes - lanes % BLOCK;
-    for first in (0..whole).step_by(BLOCK) {
-        add_block::<BLOCK>(on, factor, scales, normals, position, proposal, first);
-    }
-    for first in whole..lanes {
-        add_block::<1>(on, factor, scales, normals, position, proposal, first);
+    match lanes {
+        8 => add_block::<8>(on, factor, scales, normals, position, proposal, 8, 0),
+        4 => add_block::<4>(on, factor, scales, normals, position, proposal, 4, 0),
+        _ => (0..lanes).for_each(|first| {
+            add_block::<1>(
+                on, factor, scales, normals, position, proposal, lanes, first,
+            )
+        }),
     }
 }
 
@@ -41,12 +41,12 @@ fn add_block<const N: usize>(
     normals: &mut [f64],
     position: &[f64],
     proposal: &mut [f64],
+    lanes: usize,
     first: usize,
 ) {
-    let lanes = scales.len();
     let scale: [f64; N] = std::array::from_fn(|k| scales[first + k].value());
-    for i in 0..on.len() {
-        let z: &mut [f64; N] = block_mut(normals, i * lanes + first);
+    for z in normals.chunks_exact_mut(lanes) {
+        let z: &mut [f64; N] = block_mut(z, first);
         for k in 0..N {
             z[k] *= scale[k];
         }
@@ -56,9 +56,11 @@ fn add_block<const N: usize>(
         let mut moved: [f64; N] = *block(position, coordinate * lanes + first);
         match factor {
             Some(factor) => {
-                for j in 0..=i {
-                    let l: &[f64; N] = block(factor, (row + j) * lanes + first);
-                    let z: &[f64; N] = block(normals, j * lanes + first);
+                let row_of_factor = &factor[row * lanes..][..(i + 1) * lanes];
+                let columns = row_of_factor.chunks_exact(lanes);
+                for (l, z) in columns.zip(normals.chunks_exact(lanes)) {
+                    let l: &[f64; N] = block(l, first);
+                    let z: &[f64; N] = block(z, first);
                     for k in 0..N {
                         moved[k] += l[k] * z[k];
                     }
@@ -102,18 +104,15 @@ pub struct Trial<'a> {
 #[cfg_attr(feature = "no-avx512", multiversion(targets("x86_64+avx2")))]
 pub fn decide(mut trial: Trial) {
     let lanes = trial.active.len();
-    let whole = lanes - lanes % BLOCK;
-    for first in (0..whole).step_by(BLOCK) {
-        decide_block::<BLOCK>(&mut trial, first);
-    }
-    for first in whole..lanes {
-        decide_block::<1>(&mut trial, first);
+    match lanes {
+        8 => decide_block::<8>(&mut trial, 8, 0),
+        4 => decide_block::<4>(&mut trial, 4, 0),
+        _ => (0..lanes).for_each(|first| decide_block::<1>(&mut trial, lanes, first)),
     }
 }
 
 #[inline(always)]
-fn decide_block<const N: usize>(trial: &mut Trial, first: usize) {
-    let lanes = trial.active.len();
+fn decide_block<const N: usize>(trial: &mut Trial, lanes: usize, first: usize) {
     let active: &[bool; N] = block(trial.active, first);
     let patience: &[f64; N] = block(trial.patience, first);
     let density: &mut [f64; N] = block_mut(trial.density, first);
@@ -165,12 +164,12 @@ pub fn add_to_moments(
     mut moments: Moments,
 ) {
     let lanes = active.len();
-    let whole = lanes - lanes % BLOCK;
-    for first in (0..whole).step_by(BLOCK) {
-        moments_block::<BLOCK>(on, position, active, gain, &mut moments, first);
-    }
-    for first in whole..lanes {
-        moments_block::<1>(on, position, active, gain, &mut moments, first);
+    match lanes {
+        8 => moments_block::<8>(on, position, active, gain, &mut moments, 8, 0),
+        4 => moments_block::<4>(on, position, active, gain, &mut moments, 4, 0),
+        _ => (0..lanes).for_each(|first| {
+            moments_block::<1>(on, position, active, gain, &mut moments, lanes, first)
+        }),
     }
 }
 
@@ -181,9 +180,9 @@ fn moments_block<const N: usize>(
     active: &[bool],
     gain: &[f64],
     moments: &mut Moments,
+    lanes: usize,
     first: usize,
 ) {
-    let lanes = active.len();
     let gain: &[f64; N] = block(gain, first);
     let active: &[bool; N] = block(active, first);
     for (i, &coordinate) in on.iter().enumerate() {

@@ -104,16 +104,12 @@ impl RandomWalk {
 
     /// Normal numbers for the active lanes, 0 for the others, and the patience of each acceptance test.
     fn draw(&mut self, walkers: &mut Walkers) {
-        let lanes = walkers.lanes;
         if !walkers.active.contains(&false) {
-            for row in self.normals.chunks_exact_mut(lanes) {
-                random::normals(&mut walkers.streams, row);
-            }
-            for (patience, stream) in self.patience.iter_mut().zip(&mut walkers.streams) {
-                *patience = random::exponential(stream);
-            }
+            random::normals(&mut walkers.streams, &mut self.normals);
+            random::exponentials(&mut walkers.streams, &mut self.patience);
             return;
         }
+        let lanes = walkers.lanes;
         for (lane, stream) in walkers.streams.iter_mut().enumerate() {
             let normals = self.normals.iter_mut().skip(lane).step_by(lanes);
             if walkers.active[lane] {

@@ -11,12 +11,24 @@ const TAIL: f64 = 7.697_117_470_131_05;
 const AREA: f64 = 0.003_949_659_822_581_557;
 
 pub(super) static EXPONENTIAL: LazyLock<Table> =
-    LazyLock::new(|| Table::new(TAIL, AREA, falling, |f| -maths::ln(f)));
+    LazyLock::new(|| Table::new(TAIL, AREA, falling, |f| -maths::ln(f), |_| 1.0));
 
 /// An exponential number of rate 1; never 0.
 #[inline]
 pub fn exponential(stream: &mut Stream) -> f64 {
+    from_table(stream, &EXPONENTIAL)
+}
+
+/// A number from each stream, what [`exponential`] would give.
+pub fn exponentials(streams: &mut [Stream], into: &mut [f64]) {
     let table = &*EXPONENTIAL;
+    for (stream, number) in streams.iter_mut().zip(into) {
+        *number = from_table(stream, table);
+    }
+}
+
+#[inline(always)]
+fn from_table(stream: &mut Stream, table: &Table) -> f64 {
     let (layer, x) = proposal(stream.word(), table);
     if x < table.x[layer + 1] {
         return x;
@@ -39,8 +51,7 @@ fn beyond(stream: &mut Stream, table: &Table, mut layer: usize, mut x: f64) -> f
             // The law has no memory: its tail is the law again.
             return TAIL - maths::ln(stream.open());
         }
-        let (low, high) = (table.f[layer], table.f[layer + 1]);
-        if low + stream.unit() * (high - low) < falling(x) {
+        if table.under(layer, x, stream.unit(), falling) {
             return x;
         }
         (layer, x) = proposal(stream.word(), table);
@@ -93,6 +104,18 @@ mod tests {
             one(0xffff_ffff_ffff_ffff),
             (255, false, "3fe32d0e615ebbe0".into())
         );
+    }
+
+    #[test]
+    fn streams_together_give_what_each_gives_alone() {
+        let mut together: [Stream; 5] = std::array::from_fn(|seed| stream(seed as u8));
+        let mut alone = together.clone();
+        for _ in 0..1000 {
+            let mut row = [0.0; 5];
+            exponentials(&mut together, &mut row);
+            assert_eq!(row, alone.each_mut().map(exponential));
+        }
+        assert_eq!(together, alone);
     }
 
     #[test]

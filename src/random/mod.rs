@@ -24,7 +24,7 @@ pub(crate) mod trial;
 pub use beta::beta;
 pub use binomial::binomial;
 pub use categorical::categorical;
-pub use exponential::exponential;
+pub use exponential::{exponential, exponentials};
 pub use gamma::{gamma, ln_gamma};
 pub use geometric::geometric;
 pub use index::index;

@@ -12,7 +12,11 @@ const TAIL: f64 = 3.654_152_885_361_009;
 const AREA: f64 = 0.004_928_673_233_974_655;
 
 pub(super) static NORMAL: LazyLock<Table> =
-    LazyLock::new(|| Table::new(TAIL, AREA, density, |f| maths::sqrt(-2.0 * maths::ln(f))));
+    LazyLock::new(|| Table::new(TAIL, AREA, density, inverse, |x| (x * x - 1.0).abs()));
+
+fn inverse(f: f64) -> f64 {
+    maths::sqrt(-2.0 * maths::ln(f))
+}
 
 #[inline]
 fn density(x: f64) -> f64 {
@@ -25,12 +29,14 @@ pub fn normal(stream: &mut Stream) -> f64 {
     from_table(stream, &NORMAL)
 }
 
-/// A number from each stream, what [`normal`] would give: one stream after another leaves the processor less to
-/// wait for than one number after another.
+/// Rows of a number from each stream, what [`normal`] would give: one stream after another leaves the processor
+/// less to wait for than one number after another.
 pub fn normals(streams: &mut [Stream], into: &mut [f64]) {
     let table = &*NORMAL;
-    for (stream, number) in streams.iter_mut().zip(into) {
-        *number = from_table(stream, table);
+    for row in into.chunks_exact_mut(streams.len()) {
+        for (stream, number) in streams.iter_mut().zip(row) {
+            *number = from_table(stream, table);
+        }
     }
 }
 
@@ -60,8 +66,7 @@ fn beyond(stream: &mut Stream, table: &Table, mut layer: usize, mut x: f64) -> f
         if layer == 0 {
             return tail(stream, x);
         }
-        let (low, high) = (table.f[layer], table.f[layer + 1]);
-        if low + stream.unit() * (high - low) < density(x) {
+        if table.under(layer, x.abs(), stream.unit(), density) {
             return x;
         }
         (layer, x) = proposal(stream.word(), table);
@@ -138,9 +143,9 @@ mod tests {
         let mut together: [Stream; 5] = std::array::from_fn(|seed| stream(seed as u8));
         let mut alone = together.clone();
         for _ in 0..1000 {
-            let mut row = [0.0; 5];
-            normals(&mut together, &mut row);
-            assert_eq!(row, alone.each_mut().map(normal));
+            let mut rows = [[0.0; 5]; 2];
+            normals(&mut together, rows.as_flattened_mut());
+            assert_eq!(rows, [(); 2].map(|_| alone.each_mut().map(normal)));
         }
         assert_eq!(together, alone);
     }

@@ -90,14 +90,12 @@ impl Partial {
             let partial: [f64; maths::PARTIALS] = std::array::from_fn(|i| p[i]);
             return [reduction.partials(&partial); 8];
         }
-        let row = |i: usize| -> [f64; 8] { std::array::from_fn(|l| p[i * WIDTH + l]) };
-        let join = |a: [f64; 8], b: [f64; 8]| -> [f64; 8] {
-            std::array::from_fn(|l| reduction.join(a[l], b[l]))
-        };
-        join(
-            join(join(row(0), row(4)), join(row(2), row(6))),
-            join(join(row(1), row(5)), join(row(3), row(7))),
-        )
+        // One loop over lanes for each kind: a choice inside would keep it from becoming a few whole registers.
+        match reduction {
+            Reduction::Sum => join_rows(p, |a, b| Reduction::Sum.join(a, b)),
+            Reduction::Minimum => join_rows(p, |a, b| Reduction::Minimum.join(a, b)),
+            Reduction::Maximum => join_rows(p, |a, b| Reduction::Maximum.join(a, b)),
+        }
     }
 
     /// The result of all chunks.
@@ -115,6 +113,19 @@ impl Partial {
             }
         }
     }
+}
+
+/// The rows of eight lanes joined as [`Reduction::partials`] joins the partial results of one.
+#[inline(always)]
+fn join_rows(p: &[f64; 64], join: impl Fn(f64, f64) -> f64) -> [f64; 8] {
+    let mut out = [0.0; 8];
+    for (l, out) in out.iter_mut().enumerate() {
+        let x = |row: usize| p[row * WIDTH + l];
+        let even = join(join(x(0), x(4)), join(x(2), x(6)));
+        let odd = join(join(x(1), x(5)), join(x(3), x(7)));
+        *out = join(even, odd);
+    }
+    out
 }
 
 #[derive(Debug)]

@@ -2,6 +2,7 @@
 
 mod cost;
 mod memory;
+mod pairs;
 mod run;
 mod schedule;
 mod sides;
@@ -29,8 +30,10 @@ pub struct Program {
 impl Program {
     /// Makes a program that computes these values.
     pub fn compile(graph: &Graph, outputs: &[Value]) -> Program {
+        let mut tape = schedule::tape(graph, outputs);
+        pairs::join(&mut tape);
         Program {
-            tape: Arc::new(schedule::tape(graph, outputs)),
+            tape: Arc::new(tape),
         }
     }
 

@@ -50,6 +50,10 @@ pub(super) fn run(
                 );
                 op.slice(&a, &b, &c, &mut memory.scalars[*out].0);
             }
+            Step::Pair(pair, out, operands) => {
+                let [a, b, c] = operands.map(|a| memory.scalars[a].0);
+                pair.pack(&a, &b, &c, &mut memory.scalars[*out].0);
+            }
             Step::Slow(slow, out, operands) => {
                 let operands = operands.each_ref().map(|a| &memory.scalars[*a].0);
                 memory.scalars[*out].0 = slow.lanes(operands, lanes.live);

@@ -5,6 +5,7 @@
 //! number fills all eight places. So most operations are the same flat loop in both cases.
 
 use super::super::graph::Reduction;
+use super::pairs::Pair;
 use crate::laws::Function;
 use crate::maths::{Binary, Ternary, Unary};
 use std::sync::Arc;
@@ -57,6 +58,8 @@ pub(super) enum Step {
     Unary(Unary, Scalar, Scalar),
     Binary(Binary, Scalar, Scalar, Scalar),
     Ternary(Ternary, Scalar, Scalar, Scalar, Scalar),
+    /// Two operations, of three numbers.
+    Pair(Pair, Scalar, [Scalar; 3]),
     /// An operation that takes long and knows no vectors, lane by lane: only in the lanes in use.
     Slow(Slow, Scalar, [Scalar; 3]),
     /// One element, from 0, of a whole vector.
@@ -64,6 +67,20 @@ pub(super) enum Step {
     /// An element of a whole vector by its number from 1.
     Pick(Scalar, Store, usize, Scalar),
     Loop(Loop),
+}
+
+impl Step {
+    /// The registers that it reads, as often as it does.
+    pub fn reads(&self) -> Vec<Scalar> {
+        match self {
+            Step::Unary(_, _, a) | Step::Pick(.., a) => vec![*a],
+            Step::Binary(_, _, a, b) => vec![*a, *b],
+            Step::Ternary(_, _, a, b, c) => vec![*a, *b, *c],
+            Step::Pair(_, _, operands) | Step::Slow(_, _, operands) => operands.to_vec(),
+            Step::Element(..) => Vec::new(),
+            Step::Loop(rows) => rows.spreads.iter().map(|spread| spread.1).collect(),
+        }
+    }
 }
 
 #[derive(Debug, Clone, Copy)]

@@ -5,11 +5,13 @@ use crate::course::{Block, ChainSeed, Coordinate, Course, Phase, StartFault, Sta
 use crate::formula::Machine;
 use crate::methods::{Kernel, Reader, Walkers};
 use crate::random::{Purpose, Stream};
+use multiversion::multiversion;
 use std::sync::Arc;
 
 /// The one NaN that is recorded: which bits arithmetic makes depends on the machine.
 const CANONICAL_NAN: f64 = f64::from_bits(0x7ff8_0000_0000_0000);
 
+#[inline(always)]
 fn canonical(x: f64) -> f64 {
     if x.is_nan() { CANONICAL_NAN } else { x }
 }
@@ -52,24 +54,36 @@ pub struct Lanes {
     walkers: Walkers,
     /// Draws made since the start of burn-in, a lane.
     drawn: Vec<u64>,
+    /// Whether any lane has run away.
+    away: bool,
     recorder: Recorder,
 }
 
 /// Draws that are kept together before they go to the blocks, where each quantity of each lane has a place of
-/// its own: some lines of the cache there, so that its prefetching helps.
-const BATCH: usize = 32;
+/// its own: enough lines of the cache in a row there for its prefetching to help, while the batch stays in the
+/// second cache.
+fn batch_draws(numbers_a_draw: usize) -> usize {
+    (16_384 / numbers_a_draw.max(1)).clamp(8, 128)
+}
 
 /// What turns positions into recorded quantities.
 struct Recorder {
     keys: Vec<[u8; 32]>,
-    /// The coordinate that each quantity repeats, where that is all.
-    repeats: Option<Vec<usize>>,
+    /// Whether quantities are computed of the inputs, or just are some of them.
+    computed: bool,
+    /// Where each quantity stands among what is computed, or among the inputs.
+    rows: Vec<usize>,
     machine: Machine,
     parameters: Vec<Machine>,
     inputs: Vec<f64>,
-    /// The quantities of a batch of draws: quantity `q` of lane `l` in draw `d` of the batch is at
-    /// `(d * quantities + q) * lanes + l`.
+    /// The quantities of one draw, lanes fastest, where they must be computed.
     outputs: Vec<f64>,
+    /// The most draws of a batch.
+    draws: usize,
+    /// The quantities of a batch of draws: quantity `q` of lane `l` in draw `d` of the batch is at
+    /// `(q * (draws + 1) + d) * lanes + l`. One row more than draws, lest the rows of one draw compete for the
+    /// same lines of the cache.
+    batch: Vec<f64>,
 }
 
 impl Lanes {
@@ -94,11 +108,17 @@ impl Lanes {
             .collect();
         let walkers = Walkers::new(&mut target, position, streams);
         let machine = model.recorded.program.machine(lanes);
+        let repeats = model.recorded.program.repeats();
+        let quantities = model.recorded.quantities.len();
+        let draws = batch_draws(quantities * lanes);
         let recorder = Recorder {
             keys: chains.iter().map(|seed| seed.stream_key).collect(),
             inputs: vec![0.0; model.recorded.program.inputs() * lanes],
-            outputs: vec![0.0; BATCH * model.recorded.quantities.len() * lanes],
-            repeats: model.recorded.program.repeats(),
+            outputs: vec![0.0; quantities * lanes],
+            draws,
+            batch: vec![0.0; quantities * (draws + 1) * lanes],
+            computed: repeats.is_none(),
+            rows: repeats.unwrap_or_else(|| (0..quantities).collect()),
             parameters: model
                 .recorded
                 .predictions
@@ -114,6 +134,7 @@ impl Lanes {
             kernel,
             walkers,
             drawn: vec![0; lanes],
+            away: false,
             recorder,
         })
     }
@@ -124,19 +145,31 @@ impl Lanes {
         self.walkers.log_density[lane] > RUN_AWAY
     }
 
+    /// Lets those lanes stand still that have run away.
+    fn hold(&mut self) {
+        // All asked together, and nothing written while none has: this is done at every step.
+        let densities = self.walkers.log_density.iter();
+        let away = densities.fold(false, |any, density| any | (*density > RUN_AWAY));
+        if away || self.away {
+            for lane in 0..self.walkers.lanes {
+                self.walkers.active[lane] = !self.ran_away(lane);
+            }
+        }
+        self.away = away;
+    }
+
     /// Leaves nothing of the lanes that ran away in draw `of_batch` of the batch.
     fn blank(&mut self, of_batch: usize) {
         let lanes = self.walkers.lanes;
-        let size = self.model.recorded.quantities.len() * lanes;
         for lane in 0..lanes {
             if !self.ran_away(lane) {
                 continue;
             }
-            let draw = &mut self.recorder.outputs[of_batch * size..][..size];
-            draw.iter_mut()
-                .skip(lane)
-                .step_by(lanes)
-                .for_each(|x| *x = CANONICAL_NAN);
+            let room = self.recorder.draws + 1;
+            let rows = self.recorder.batch.chunks_exact_mut(lanes);
+            rows.skip(of_batch)
+                .step_by(room)
+                .for_each(|row| row[lane] = CANONICAL_NAN);
         }
     }
 
@@ -145,19 +178,10 @@ impl Lanes {
         let lanes = self.walkers.lanes;
         let position = &self.walkers.position;
         let recorder = &mut self.recorder;
-        let size = self.model.recorded.quantities.len() * lanes;
-        let outputs = &mut recorder.outputs[of_batch * size..][..size];
-        let mut at = position.len();
         if recorder.parameters.is_empty() {
-            match &recorder.repeats {
-                Some(coordinates) => copy_rows(coordinates, position, lanes, outputs),
-                None => {
-                    recorder.machine.run(position, outputs);
-                    outputs.iter_mut().for_each(|x| *x = canonical(*x));
-                }
-            }
-            return;
+            return recorder.keep(Some(position), lanes, of_batch);
         }
+        let mut at = position.len();
         recorder.inputs[..at].copy_from_slice(position);
         let predictions = &self.model.recorded.predictions;
         for (prediction, machine) in predictions.iter().zip(&mut recorder.parameters) {
@@ -184,34 +208,64 @@ impl Lanes {
             }
             at += prediction.len * lanes;
         }
-        recorder.machine.run(&recorder.inputs, outputs);
-        outputs.iter_mut().for_each(|x| *x = canonical(*x));
+        recorder.keep(None, lanes, of_batch);
     }
 
     /// Moves the first `draws` draws of the batch to the blocks, where they begin at draw `first`.
     fn unload(&self, blocks: &mut [Block], first: usize, draws: usize) {
         let lanes = self.walkers.lanes;
-        let size = self.model.recorded.quantities.len() * lanes;
-        let outputs = &self.recorder.outputs;
-        for (lane, block) in blocks.iter_mut().enumerate() {
-            for (quantity, column) in block.values.chunks_exact_mut(block.draws).enumerate() {
-                let column = &mut column[first..first + draws];
-                let at = quantity * lanes + lane;
-                for (to, draw) in column.iter_mut().zip(outputs.chunks_exact(size)) {
-                    *to = draw[at];
+        let room = self.recorder.draws + 1;
+        let rows = self.recorder.batch.chunks_exact(room * lanes);
+        for (quantity, rows) in rows.enumerate() {
+            for (lane, block) in blocks.iter_mut().enumerate() {
+                let column = &mut block.values[quantity * block.draws + first..][..draws];
+                for (to, row) in column.iter_mut().zip(rows.chunks_exact(lanes)) {
+                    *to = row[lane];
                 }
             }
         }
     }
 }
 
-/// Rows of a position one after another.
-fn copy_rows(coordinates: &[usize], position: &[f64], lanes: usize, out: &mut [f64]) {
-    for (&coordinate, out) in coordinates.iter().zip(out.chunks_exact_mut(lanes)) {
-        let row = &position[coordinate * lanes..][..lanes];
-        for (out, &x) in out.iter_mut().zip(row) {
-            *out = canonical(x);
+impl Recorder {
+    /// Puts the quantities of a draw in the batch: of a position, or of the inputs at hand.
+    fn keep(&mut self, position: Option<&[f64]>, lanes: usize, of_batch: usize) {
+        let mut from = position.unwrap_or(&self.inputs);
+        if self.computed {
+            self.machine.run(from, &mut self.outputs);
+            from = &self.outputs;
         }
+        let room = self.draws + 1;
+        copy_rows(&self.rows, from, lanes, &mut self.batch, room, of_batch);
+    }
+}
+
+/// Copies rows to every `room`-th row of `out`, from row `first` on.
+#[cfg_attr(
+    not(feature = "no-avx512"),
+    multiversion(targets("x86_64+avx512f+avx512dq+avx512vl", "x86_64+avx2"))
+)]
+#[cfg_attr(feature = "no-avx512", multiversion(targets("x86_64+avx2")))]
+fn copy_rows(
+    rows: &[usize],
+    from: &[f64],
+    lanes: usize,
+    out: &mut [f64],
+    room: usize,
+    first: usize,
+) {
+    if lanes == 8 {
+        let (from, _) = from.as_chunks::<8>();
+        let (out, _) = out.as_chunks_mut::<8>();
+        for (&row, out) in rows.iter().zip(out.iter_mut().skip(first).step_by(room)) {
+            *out = from[row].map(canonical);
+        }
+        return;
+    }
+    let out = out.chunks_exact_mut(lanes).skip(first).step_by(room);
+    for (&row, out) in rows.iter().zip(out) {
+        out.copy_from_slice(&from[row * lanes..][..lanes]);
+        out.iter_mut().for_each(|x| *x = canonical(*x));
     }
 }
 
@@ -229,17 +283,19 @@ impl Course for Lanes {
             values: vec![0.0; draws * quantities],
         };
         let mut blocks: Vec<Block> = (0..lanes).map(block).collect();
-        for first in (0..draws).step_by(BATCH) {
-            let batch = BATCH.min(draws - first);
+        self.hold();
+        let most = self.recorder.draws;
+        for first in (0..draws).step_by(most) {
+            let batch = most.min(draws - first);
             for of_batch in 0..batch {
                 for _ in 0..self.model.every {
-                    for lane in 0..lanes {
-                        self.walkers.active[lane] = !self.ran_away(lane);
-                    }
                     self.kernel.step(&mut self.target, &mut self.walkers, phase);
+                    self.hold();
                 }
                 self.record(of_batch);
-                self.blank(of_batch);
+                if self.away {
+                    self.blank(of_batch);
+                }
                 for drawn in &mut self.drawn {
                     *drawn += 1;
                 }
