@@ -34,6 +34,10 @@ pub fn add_steps(
 }
 
 #[inline(always)]
+#[expect(
+    clippy::too_many_arguments,
+    reason = "those of `add_steps`, and which lanes"
+)]
 fn add_block<const N: usize>(
     on: &[usize],
     factor: Option<&[f64]>,
@@ -45,14 +49,13 @@ fn add_block<const N: usize>(
     first: usize,
 ) {
     let scale: [f64; N] = std::array::from_fn(|k| scales[first + k].value());
-    for z in normals.chunks_exact_mut(lanes) {
-        let z: &mut [f64; N] = block_mut(z, first);
+    let mut row = 0;
+    for (i, &coordinate) in on.iter().enumerate() {
+        // In this loop, not in one before it: that would be turned into one across the rows, by gathering.
+        let z: &mut [f64; N] = block_mut(normals, i * lanes + first);
         for k in 0..N {
             z[k] *= scale[k];
         }
-    }
-    let mut row = 0;
-    for (i, &coordinate) in on.iter().enumerate() {
         let mut moved: [f64; N] = *block(position, coordinate * lanes + first);
         match factor {
             Some(factor) => {

@@ -1,5 +1,5 @@
 use super::*;
-use crate::course::{EstimandSpec, Phase, Standing, StartSpec};
+use crate::course::{Block, EstimandSpec, Phase, Standing, StartSpec, State};
 use crate::maths::Unary;
 use crate::place::{Source, Text};
 use crate::reading::{Files, Section, Table, data, parse};
@@ -562,4 +562,52 @@ fn a_law_cut_by_what_it_is_used_for_is_told() {
     let model = resolve(&bounded, &stations(false), &StartSpec::Spread, &[]).expect("a model");
     let (_, evidence) = said(&model, "finite mass").expect("is said");
     assert!(!evidence.contains("law of `p`"), "{evidence}");
+}
+
+/// A density with a cliff to run away up, which some chains meet and others do not.
+#[test]
+fn a_lane_that_ran_away_leaves_its_neighbours_alone() {
+    let study = "[model]\nfamily = \"density\"\n[model.unknown]\na = { law = \"normal(mean = 0, sd = 1)\" }\n\
+                 b = { law = \"normal(mean = 0, sd = 1)\" }\n[model.term]\nt = \"if(a > 5.4, 2e15, 0)\"\n\
+                 [sampler]\nmethod = \"metropolis\"\nadapt = \"none\"\n";
+    let start = StartSpec::At(section("a = 0\nb = 0"));
+    let model = resolve(study, &BTreeMap::new(), &start, &[]).expect("a model");
+    let seeds: Vec<ChainSeed> = (0..8)
+        .map(|chain| ChainSeed {
+            chain,
+            stream_key: [chain as u8; 32],
+        })
+        .collect();
+    let mut together = model.clone().course(&seeds).expect("a start");
+    let mut blocks = together.advance(Phase::Draws, 150);
+    let still: Vec<State> = (0..8).map(|lane| together.save(lane)).collect();
+    blocks.extend(together.advance(Phase::Draws, 150));
+    let mut away = 0;
+    for (lane, seed) in seeds.iter().enumerate() {
+        let mut alone = model
+            .clone()
+            .course(std::slice::from_ref(seed))
+            .expect("a start");
+        for half in [lane, 8 + lane] {
+            let mine = alone.advance(Phase::Draws, 150).remove(0);
+            let bits = |block: &Block| block.values.iter().map(|x| x.to_bits()).collect::<Vec<_>>();
+            assert_eq!(bits(&blocks[half]), bits(&mine), "chain {lane}");
+        }
+        assert_eq!(together.save(lane), alone.save(0), "chain {lane}");
+        let gone = |block: &Block| block.values.iter().all(|x| x.is_nan());
+        if gone(&blocks[8 + lane]) {
+            away += 1;
+            let first = blocks[lane].values.iter().position(|x| x.is_nan());
+            assert!(first.is_none_or(|first| first > 0), "it did walk before");
+            if blocks[lane].values[149].is_nan() {
+                // All but the count of draws: the place, the density, the stream, the counts of the kernel.
+                let end = together.save(lane);
+                assert_eq!(still[lane].moving[8..], end.moving[8..], "chain {lane}");
+            }
+        } else if blocks[lane].values[149].is_finite() {
+            let moved = still[lane].moving[8..] != together.save(lane).moving[8..];
+            assert!(moved, "chain {lane}");
+        }
+    }
+    assert!(0 < away && away < 8, "{away} of 8 ran away");
 }
