@@ -1,5 +1,5 @@
 use super::*;
-use crate::course::{Block, EstimandSpec, Phase, Standing, StartSpec, State};
+use crate::course::{Block, EstimandSpec, Phase, StartSpec, State};
 use crate::maths::Unary;
 use crate::place::{Source, Text};
 use crate::reading::{Files, Section, Table, data, parse};
@@ -430,6 +430,7 @@ fn the_canonical_form_does_not_know_the_order_of_the_file() {
     assert_ne!(canonical(PUMPS), canonical(&other.replace("0.10", "0.11")));
 }
 
+/// A density with a cliff to run away up, which some chains meet and others do not.
 #[test]
 fn a_lane_that_ran_away_leaves_its_neighbours_alone() {
     let study = "[model]\nfamily = \"density\"\n[model.unknown]\na = { law = \"normal(mean = 0, sd = 1)\" }\n\

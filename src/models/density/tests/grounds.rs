@@ -1,6 +1,7 @@
 //! What the model says of its conditions before any draw, and what a chain that runs away leaves.
 
 use super::*;
+use crate::course::Standing;
 
 fn said(model: &Arc<dyn Model>, name: &str) -> Option<(Standing, String)> {
     let conditions = model.conditions();
@@ -137,5 +138,3 @@ fn a_law_cut_by_what_it_is_used_for_is_told() {
     let (_, evidence) = said(&model, "finite mass").expect("is said");
     assert!(!evidence.contains("law of `p`"), "{evidence}");
 }
-
-/// A density with a cliff to run away up, which some chains meet and others do not.
