@@ -47,6 +47,23 @@ impl Json {
         }
     }
 
+    /// A count.
+    pub fn as_count(&self) -> Option<u64> {
+        match self {
+            Json::Count(count) => Some(*count),
+            _ => None,
+        }
+    }
+
+    /// A number: what was written as a real is read as a count where it is whole and small.
+    pub fn as_real(&self) -> Option<f64> {
+        match self {
+            Json::Real(value) => Some(*value),
+            Json::Count(count) => Some(*count as f64),
+            _ => None,
+        }
+    }
+
     /// The text of a string.
     pub fn as_text(&self) -> Option<&str> {
         match self {

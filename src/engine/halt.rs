@@ -14,6 +14,14 @@ pub enum Halt {
 }
 
 impl Halt {
+    /// Why, in words alone.
+    pub fn words(self) -> String {
+        match self {
+            Halt::Interrupted => "interrupted".into(),
+            Halt::Start { words, .. } | Halt::Journal(words) | Halt::Own(words) => words,
+        }
+    }
+
     pub(super) fn own(point: usize, words: impl std::fmt::Display) -> Halt {
         Halt::Own(format!("point {}: {words}", point + 1))
     }

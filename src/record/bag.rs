@@ -39,22 +39,18 @@ const DEEPEST: usize = 8;
 pub fn write(folder: &Path, title: &str, result_digest: &str) -> Result<(), RecordFault> {
     let walked = walk(folder)?;
     let mut manifest = String::new();
-    let (mut bytes, mut count) = (0, 0);
     for (name, path) in &walked.files {
         if name.starts_with("data/") {
-            let (digest, size) =
-                sha256(path).map_err(|fault| RecordFault::disk("read", path, &fault))?;
-            manifest.push_str(&format!("{digest}  {name}\n"));
-            bytes += size;
-            count += 1;
+            manifest.push_str(&line(path, name)?);
         }
     }
     let title = one_line(title);
     let info = format!(
         "Bag-Software-Agent: odograph {}\nBagging-Date: {}\nExternal-Description: {title}\n\
-         External-Identifier: {result_digest}\nPayload-Oxum: {bytes}.{count}\n",
+         External-Identifier: {result_digest}\nPayload-Oxum: {}\n",
         env!("CARGO_PKG_VERSION"),
         &moment::now()[..10],
+        walked.oxum(),
     );
     let declaration = "BagIt-Version: 1.0\nTag-File-Character-Encoding: UTF-8\n";
     for (name, text) in [
@@ -67,13 +63,16 @@ pub fn write(folder: &Path, title: &str, result_digest: &str) -> Result<(), Reco
     }
     let mut tags = String::new();
     for name in TAGGED {
-        let path = folder.join(name);
-        let (digest, _) =
-            sha256(&path).map_err(|fault| RecordFault::disk("read", &path, &fault))?;
-        tags.push_str(&format!("{digest}  {name}\n"));
+        tags.push_str(&line(&folder.join(name), name)?);
     }
     let path = folder.join(TAGS);
     fs::write(&path, tags).map_err(|fault| RecordFault::disk("write", &path, &fault))
+}
+
+/// A file's line in a list.
+fn line(path: &Path, name: &str) -> Result<String, RecordFault> {
+    let digest = sha256(path).map_err(|fault| RecordFault::disk("read", path, &fault))?;
+    Ok(format!("{digest}  {name}\n"))
 }
 
 /// The path under `data/` of every file there, sorted, and its length.
@@ -123,7 +122,7 @@ pub fn check(folder: &Path) -> Result<Vec<String>, RecordFault> {
         match listed.remove(name) {
             None => differences.push(format!("{name} is in no list of the record")),
             Some(digest) => {
-                if sha256(path).ok().is_none_or(|(found, _)| found != digest) {
+                if sha256(path).ok().is_none_or(|found| found != digest) {
                     let by = match name.starts_with("data/") {
                         true => MANIFEST,
                         false => TAGS,
@@ -176,7 +175,7 @@ pub fn label_differences(folder: &Path, title: &str, result_digest: &str) -> Vec
 }
 
 /// What the label of a bag says under a name.
-fn label(folder: &Path, name: &str) -> Option<String> {
+pub fn label(folder: &Path, name: &str) -> Option<String> {
     let text = reading::read(&folder.join(INFO), LONGEST_INFO).ok()?.bytes;
     let text = String::from_utf8(text).ok()?;
     let said = text
@@ -293,19 +292,15 @@ fn walk(folder: &Path) -> Result<Walked, RecordFault> {
     Ok(walked)
 }
 
-/// In hexadecimal, of a file of any length; and the length.
-pub(super) fn sha256(path: &Path) -> io::Result<(String, u64)> {
+/// In hexadecimal, of a file of any length.
+pub(super) fn sha256(path: &Path) -> io::Result<String> {
     let mut file = File::open(path)?;
     let mut hash = Sha256::new();
     let mut chunk = vec![0; CHUNK];
-    let mut size = 0;
     loop {
         match file.read(&mut chunk) {
-            Ok(0) => return Ok((canon::hex(&hash.finalize().into()), size)),
-            Ok(count) => {
-                size += count as u64;
-                hash.update(&chunk[..count]);
-            }
+            Ok(0) => return Ok(canon::hex(&hash.finalize().into())),
+            Ok(count) => hash.update(&chunk[..count]),
             Err(fault) if fault.kind() == io::ErrorKind::Interrupted => {}
             Err(fault) => return Err(fault),
         }

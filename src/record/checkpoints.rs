@@ -189,16 +189,7 @@ impl Checkpoints {
 
     /// The state of a chain after a block; `None` where it is not kept.
     pub fn state(&self, chain: usize, block: u64) -> Result<Option<State>, String> {
-        let Some(seat) = self.seats.get(&(chain, block)) else {
-            return Ok(None);
-        };
-        let cell = |(group, row): (usize, usize), column| {
-            Ok::<_, String>(std::mem::take(&mut self.bytes(group, column)?[row]))
-        };
-        Ok(Some(State {
-            frozen: cell(seat.frozen, 3)?,
-            moving: cell((seat.group, seat.row), 4)?,
-        }))
+        self.next_state(chain, block, &mut Cursor::default())
     }
 
     /// [`Checkpoints::state`] of one block after another.

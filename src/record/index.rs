@@ -1,7 +1,7 @@
 //! An index of the records under a folder, so that looking through thousands is quick. It is made from the records
 //! and can be thrown away at any time; nothing is believed because it stands there.
 
-use super::survey::{Found, Glance, Headline, State, glance};
+use super::survey::{Found, Glance, Headline, State, glance, headlines};
 use crate::canon::Json;
 use rusqlite::{Connection, OptionalExtension, params};
 use std::fs;
@@ -131,25 +131,7 @@ pub fn written(glance: &Glance) -> Json {
 
 fn read(json: &Json, found: &Found) -> Option<Glance> {
     let text = |key: &str| json.get(key).and_then(Json::as_text).map(str::to_owned);
-    let count = |key: &str| match json.get(key) {
-        Some(Json::Count(count)) => Some(*count),
-        _ => None,
-    };
-    let real = |json: &Json, key: &str| match json.get(key) {
-        Some(Json::Real(value)) => Some(*value),
-        Some(Json::Count(value)) => Some(*value as f64),
-        _ => None,
-    };
-    let headline = |one: &Json| Headline {
-        name: one
-            .get("name")
-            .and_then(Json::as_text)
-            .unwrap_or_default()
-            .into(),
-        unit: one.get("unit").and_then(Json::as_text).map(str::to_owned),
-        value: real(one, "value"),
-        mcse: real(one, "mcse"),
-    };
+    let count = |key: &str| json.get(key).and_then(Json::as_count);
     let states = [State::Sealed, State::Open, State::Unreadable];
     let state = text("state")?;
     Some(Glance {
@@ -163,7 +145,7 @@ fn read(json: &Json, found: &Found) -> Option<Glance> {
         goal: text("goal")?,
         points: count("points")?,
         estimands: count("estimands")?,
-        headlines: json.get("figures")?.items().iter().map(headline).collect(),
+        headlines: headlines(json.get("figures")?.items()),
     })
 }
 

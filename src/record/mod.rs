@@ -23,7 +23,8 @@ mod sync;
 pub mod trail_file;
 
 pub use bag::{
-    CIRCUMSTANCES, check as check_bag, label_differences, payload, pitfalls, write as write_bag,
+    CIRCUMSTANCES, check as check_bag, label, label_differences, payload, pitfalls,
+    write as write_bag,
 };
 pub use checkpoints::Checkpoints;
 pub use circumstances::Circumstances;

@@ -36,7 +36,7 @@ pub fn members() -> Vec<(&'static str, Json)> {
 
 /// SHA-256 of the file of the running program.
 fn executable() -> Option<String> {
-    let (sha256, _) = bag::sha256(&env::current_exe().ok()?).ok()?;
+    let sha256 = bag::sha256(&env::current_exe().ok()?).ok()?;
     Some(sha256)
 }
 

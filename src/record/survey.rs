@@ -166,10 +166,10 @@ pub fn glance(found: &Found) -> Glance {
     glance
 }
 
-fn json(found: &Found, name: &str) -> Result<Json, String> {
-    let bytes = reading::read(&found.at.join(name), LARGEST)
-        .map_err(|_| format!("{name} cannot be read"))?
-        .bytes;
+/// Reads JSON of a record, of at most so many bytes.
+pub fn json(record: &Path, name: &str, most: u64) -> Result<Json, String> {
+    let read = reading::read(&record.join(name), most);
+    let bytes = read.map_err(|_| format!("{name} cannot be read"))?.bytes;
     let text = String::from_utf8(bytes).map_err(|_| format!("{name} is not UTF-8"))?;
     Json::read(&text).map_err(|words| format!("{name} is {words}"))
 }
@@ -185,14 +185,14 @@ fn fill(found: &Found, glance: &mut Glance) -> Result<(), String> {
     if found.state == State::Open && !found.at.join("data/plan.json").exists() {
         return Ok(());
     }
-    let plan = json(found, "data/plan.json")?;
+    let plan = json(&found.at, "data/plan.json", LARGEST)?;
     glance.title = text(&plan, "title");
     glance.question = text(&plan, "question");
     glance.plan_digest = text(&plan, "plan_digest");
     if found.state == State::Open {
         return Ok(());
     }
-    let summary = json(found, "data/summary.json")?;
+    let summary = json(&found.at, "data/summary.json", LARGEST)?;
     glance.result_digest = text(&summary, "result_digest");
     let points = summary.get("points").map_or(&[][..], Json::items);
     glance.points = points.len() as u64;
@@ -205,17 +205,19 @@ fn fill(found: &Found, glance: &mut Glance) -> Result<(), String> {
     let estimands = points.first().and_then(|point| point.get("estimands"));
     let estimands = estimands.map_or(&[][..], Json::items);
     glance.estimands = estimands.len() as u64;
-    let real = |json: &Json, key: &str| match json.get(key) {
-        Some(Json::Real(value)) => Some(*value),
-        Some(Json::Count(value)) => Some(*value as f64),
-        _ => None,
-    };
+    glance.headlines = headlines(&estimands[..estimands.len().min(FIGURES)]);
+    Ok(())
+}
+
+/// Figures from JSON that names them as `summary.json` does.
+pub(super) fn headlines(figures: &[Json]) -> Vec<Headline> {
+    let text = |json: &Json, key: &str| json.get(key).and_then(Json::as_text).map(str::to_owned);
+    let real = |json: &Json, key: &str| json.get(key).and_then(Json::as_real);
     let headline = |json: &Json| Headline {
-        name: text(json, "name"),
-        unit: json.get("unit").and_then(Json::as_text).map(str::to_owned),
+        name: text(json, "name").unwrap_or_default(),
+        unit: text(json, "unit"),
         value: real(json, "value"),
         mcse: real(json, "mcse"),
     };
-    glance.headlines = estimands.iter().take(FIGURES).map(headline).collect();
-    Ok(())
+    figures.iter().map(headline).collect()
 }

@@ -66,14 +66,10 @@ pub fn run<'a>(
         lanes: None,
         stop: request.stop,
     };
-    let words = |halt: Halt| match halt {
-        Halt::Interrupted => "interrupted".to_owned(),
-        Halt::Start { words, .. } | Halt::Journal(words) | Halt::Own(words) => words,
-    };
     let tasks = Task::all(plan);
-    let ends =
-        conduct(&tasks, &PlanJudge::new(plan), &orders, &mut Quiet(journal)).map_err(words)?;
-    let paired = paired(plan, &ends, request.threads, request.stop).map_err(words)?;
+    let ends = conduct(&tasks, &PlanJudge::new(plan), &orders, &mut Quiet(journal))
+        .map_err(Halt::words)?;
+    let paired = paired(plan, &ends, request.threads, request.stop).map_err(Halt::words)?;
     Ok((Outcome::of(plan, &ends, paired), ends))
 }
 

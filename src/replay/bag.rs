@@ -4,7 +4,6 @@ use super::opened::{Opened, Stated};
 use crate::course::Phase;
 use crate::record::{self, checkpoints, draws_file, trail_file};
 use std::collections::BTreeSet;
-use std::fs;
 use std::path::Path;
 
 /// Every difference of a bag from its lists.
@@ -34,32 +33,21 @@ pub fn strangers(folder: &Path, opened: &Opened, rendered: &[&str]) -> Vec<Strin
         known.insert(checkpoints::name(point));
         known.extend([Phase::BurnIn, Phase::Draws].map(|phase| draws_file::name(point, phase)));
     }
-    let mut strangers = Vec::new();
-    let mut folders = vec!["data".to_owned()];
-    while let Some(inner) = folders.pop() {
-        let Ok(entries) = fs::read_dir(folder.join(&inner)) else {
-            continue;
-        };
-        for entry in entries.flatten() {
-            let name = format!("{inner}/{}", entry.file_name().to_string_lossy());
-            // The bag has been checked: there are no links, and nothing too deep.
-            if entry.file_type().is_ok_and(|kind| kind.is_dir()) {
-                folders.push(name);
-            } else if !known.contains(&name) {
-                strangers.push(format!("{name} is no part of a record of this plan"));
-            }
-        }
-    }
-    strangers
+    let files = match record::payload(folder) {
+        Ok(files) => files.into_iter(),
+        Err(fault) => return vec![fault.to_string()],
+    };
+    files
+        .map(|(name, _)| format!("data/{name}"))
+        .filter(|name| !known.contains(name))
+        .map(|name| format!("{name} is no part of a record of this plan"))
+        .collect()
 }
 
 /// The version of the program that sealed a record, as it says itself.
 pub fn version(folder: &Path) -> Option<String> {
-    let info = fs::read_to_string(folder.join("bag-info.txt")).ok()?;
-    let agent = info
-        .lines()
-        .find_map(|line| line.strip_prefix("Bag-Software-Agent: "));
-    agent.map(|agent| agent.chars().filter(|c| !c.is_control()).take(40).collect())
+    let agent = record::label(folder, "Bag-Software-Agent")?;
+    Some(agent.chars().filter(|c| !c.is_control()).take(40).collect())
 }
 
 /// What the record's numerics ask for, in words.

@@ -86,7 +86,7 @@ pub fn trails(folder: &Path, opened: &Opened) -> Result<Trails, Vec<String>> {
     }
 }
 
-/// `point 1, chain 2, block 3 …`; the point is left out where there is but one.
+/// `point 1, chain 2, block 3 …`
 pub fn place(point: usize, chain: usize, block: u64, words: &str) -> String {
     format!(
         "point {}, chain {}, block {block} {words}",

@@ -3,7 +3,7 @@
 use super::draws::{PointTrail, Trails};
 use super::opened::Opened;
 use crate::engine::{
-    Ended, Halt, Judge, PlanJudge, PointEnd, Reviewed, Settling, burn_in_reviews, paired,
+    Ended, Judge, PlanJudge, PointEnd, Reviewed, Settling, burn_in_reviews, paired,
 };
 use crate::plan::{self, BurnIn, Plan};
 use crate::record::draws_file::DrawsFile;
@@ -40,12 +40,7 @@ pub fn outcome<'a>(
     if !found.is_empty() {
         return Err(Some(found));
     }
-    let paired = paired(plan, &ends, threads, stop).map_err(|halt| {
-        Some(vec![match halt {
-            Halt::Journal(words) | Halt::Own(words) => words,
-            _ => "interrupted".into(),
-        }])
-    })?;
+    let paired = paired(plan, &ends, threads, stop).map_err(|halt| Some(vec![halt.words()]))?;
     Ok(Outcome::of(plan, &ends, paired))
 }
 

@@ -177,11 +177,7 @@ fn recorded(folder: &Path) -> Result<Vec<Recorded>, String> {
 }
 
 fn pair(json: &Json) -> Option<(f64, f64)> {
-    let real = |key: &str| match json.get(key) {
-        Some(Json::Real(value)) => Some(*value),
-        Some(Json::Count(value)) => Some(*value as f64),
-        _ => None,
-    };
+    let real = |key: &str| json.get(key)?.as_real();
     Some((real("value")?, real("mcse")?))
 }
 

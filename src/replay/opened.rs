@@ -31,18 +31,15 @@ pub struct Stated {
 
 /// Reads JSON of a record within bounds.
 pub fn json(folder: &Path, name: &str) -> Result<Json, String> {
-    let read = reading::read(&folder.join(name), LARGEST_JSON);
-    let bytes = read.map_err(|_| format!("{name} cannot be read"))?.bytes;
-    let text = String::from_utf8(bytes).map_err(|_| format!("{name} is not UTF-8"))?;
-    Json::read(&text).map_err(|words| format!("{name} is {words}"))
+    record::survey::json(folder, name, LARGEST_JSON)
 }
 
 /// Reads what `plan.json` says of itself.
 pub fn stated(folder: &Path) -> Result<Stated, String> {
     let json = json(folder, "data/plan.json")?;
-    let version = |which: &str| match json.get("numerics").and_then(|n| n.get(which)) {
-        Some(Json::Count(version)) => Ok(*version),
-        _ => Err(format!("data/plan.json: numerics.{which} is no version")),
+    let version = |which: &str| {
+        let found = json.get("numerics").and_then(|n| n.get(which)?.as_count());
+        found.ok_or_else(|| format!("data/plan.json: numerics.{which} is no version"))
     };
     Ok(Stated {
         numerics: Numerics {
