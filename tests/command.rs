@@ -2,7 +2,7 @@
 
 mod common;
 
-use common::{odograph, text};
+use common::{odograph, status, text};
 use std::fs;
 use std::path::{Path, PathBuf};
 use std::process::{Command, Output};
@@ -29,10 +29,6 @@ fn with(content: &str, arguments: &[&str]) -> (tempfile::TempDir, Output) {
     fs::write(folder.path().join("one.toml"), content).unwrap();
     let output = odograph(folder.path(), arguments);
     (folder, output)
-}
-
-fn status(output: &Output) -> i32 {
-    output.status.code().expect("no signal")
 }
 
 /// The folders in a folder, if it is there.

@@ -2,7 +2,7 @@
 
 mod common;
 
-use common::{odograph, text};
+use common::{odograph, status, text};
 use odograph::course::{Phase, Quantity, State};
 use odograph::engine::trail::StateHash;
 use odograph::engine::{Mark, Reader, Stood};
@@ -51,10 +51,6 @@ fn with(changes: &[(&str, &str)], more: &str) -> String {
         study = study.replace(from, to);
     }
     study + more
-}
-
-fn status(output: &Output) -> i32 {
-    output.status.code().expect("no signal")
 }
 
 fn run(folder: &Path, study: &str, threads: usize) -> Output {

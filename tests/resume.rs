@@ -5,7 +5,7 @@
 
 mod common;
 
-use common::{binary, text};
+use common::{binary, payload, text};
 use std::collections::BTreeMap;
 use std::fs;
 use std::io::Read;
@@ -106,24 +106,11 @@ fn folder_of(into: &Path) -> PathBuf {
     found.remove(0)
 }
 
-/// Every file of the payload, by its path: draws, trail, checkpoints and what is rendered from them. The crate's
-/// metadata tell times, which are no part of a result.
+/// The payload of the one record under `into`.
 fn bits(into: &Path) -> BTreeMap<PathBuf, Vec<u8>> {
     let sealed = folder_of(into);
     assert_eq!(sealed.extension(), None, "not sealed: {}", sealed.display());
-    let mut files = BTreeMap::new();
-    let mut folders = vec![sealed.join("data")];
-    while let Some(folder) = folders.pop() {
-        for entry in fs::read_dir(folder).expect("a folder") {
-            let path = entry.expect("an entry").path();
-            if path.is_dir() {
-                folders.push(path);
-            } else if !path.ends_with("ro-crate-metadata.json") {
-                let name = path.strip_prefix(&sealed).expect("in it").to_owned();
-                files.insert(name, fs::read(&path).expect("a file"));
-            }
-        }
-    }
+    let files = payload(&sealed);
     assert!(files.len() > 8, "{:?}", files.keys());
     files
 }

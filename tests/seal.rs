@@ -3,11 +3,10 @@
 
 mod common;
 
-use common::{binary, odograph, text};
-use std::collections::BTreeMap;
+use common::{binary, odograph, payload, status, text};
 use std::fs;
 use std::path::{Path, PathBuf};
-use std::process::{Child, Command, Output, Stdio};
+use std::process::{Child, Command, Stdio};
 use std::thread::sleep;
 use std::time::{Duration, Instant};
 
@@ -43,10 +42,6 @@ fn folder(content: &str) -> tempfile::TempDir {
 /// Without its line breaks.
 fn flat(text: &str) -> String {
     text.split_whitespace().collect::<Vec<_>>().join(" ")
-}
-
-fn status(output: &Output) -> i32 {
-    output.status.code().expect("no signal")
 }
 
 /// Begins a run with one thread, waits until its journal has some length, and ends it by SIGTERM.
@@ -106,24 +101,6 @@ fn records(folder: &Path) -> Vec<PathBuf> {
 fn sealed(folder: &Path) -> Vec<PathBuf> {
     let all = records(folder).into_iter();
     all.filter(|path| !is_open(path)).collect()
-}
-
-/// Every file of the payload by its path.
-fn payload(record: &Path) -> BTreeMap<PathBuf, Vec<u8>> {
-    let mut files = BTreeMap::new();
-    let mut folders = vec![record.join("data")];
-    while let Some(folder) = folders.pop() {
-        for entry in fs::read_dir(folder).expect("a folder") {
-            let path = entry.expect("an entry").path();
-            if path.is_dir() {
-                folders.push(path);
-            } else if !path.ends_with("ro-crate-metadata.json") {
-                let name = path.strip_prefix(record).expect("in it").to_owned();
-                files.insert(name, fs::read(&path).expect("a file"));
-            }
-        }
-    }
-    files
 }
 
 fn json(record: &Path, name: &str) -> serde_json::Value {

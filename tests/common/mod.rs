@@ -2,6 +2,7 @@
 
 #![allow(dead_code, reason = "each test uses its part")]
 
+use std::collections::BTreeMap;
 use std::fs;
 use std::path::{Path, PathBuf};
 use std::process::{Command, Output};
@@ -26,6 +27,30 @@ pub fn odograph(folder: &Path, arguments: &[&str]) -> Output {
 
 pub fn text(bytes: &[u8]) -> String {
     String::from_utf8_lossy(bytes).into_owned()
+}
+
+/// The exit status of a process that no signal ended.
+pub fn status(output: &Output) -> i32 {
+    output.status.code().expect("no signal")
+}
+
+/// Every file of a record's payload, by its path: draws, trail, checkpoints and what is rendered from them. The
+/// crate's metadata tell times, which are no part of a result.
+pub fn payload(record: &Path) -> BTreeMap<PathBuf, Vec<u8>> {
+    let mut files = BTreeMap::new();
+    let mut folders = vec![record.join("data")];
+    while let Some(folder) = folders.pop() {
+        for entry in fs::read_dir(folder).expect("a folder") {
+            let path = entry.expect("an entry").path();
+            if path.is_dir() {
+                folders.push(path);
+            } else if !path.ends_with("ro-crate-metadata.json") {
+                let name = path.strip_prefix(record).expect("in it").to_owned();
+                files.insert(name, fs::read(&path).expect("a file"));
+            }
+        }
+    }
+    files
 }
 
 /// What one `run` left.
