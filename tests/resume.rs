@@ -41,7 +41,7 @@ method = "metropolis"
 
 [ensemble]
 chains = 5
-every = 10
+every = 100
 burn_in = { from = 500, at_most = 4000 }
 draws = 12000
 "#;
@@ -149,7 +149,13 @@ fn killed_at_any_moment_it_goes_on_to_the_same_bits() {
         for again in 0..=moments.below(3) {
             let threads = 1 + moments.below(3) as usize;
             let mut child = command(folder.path(), &into, threads).spawn().unwrap();
-            sleep(Duration::from_millis(moments.below(length + length / 8)));
+            let moment = Duration::from_millis(moments.below(length + length / 8));
+            // The clock may run ahead of a busy machine, or behind it: one kill lands in any case.
+            if (turn, again) == (0, 0) {
+                wait_for(&into, |journal| journal > 100_000);
+            } else {
+                sleep(moment);
+            }
             child.kill().unwrap();
             let ended = wait(child);
             if ended.status.is_none() {
